@@ -27,6 +27,7 @@ from typing import Any, TypeAlias
 import numpy as np
 import numpy.typing as npt
 
+from lostwork.errors import PairRefused
 from lostwork.properties.components import Component
 
 __all__ = [
@@ -184,7 +185,7 @@ class PropertyModel(ABC):
 
         A two-phase model of a mixture overrides this.
         """
-        raise NotImplementedError
+        raise PairRefused(given=("T", "p"), reason="this model gives no phase compositions")
 
     def noise_at(self, T: Column, p: Column) -> Column:
         """Inconsistency of the entropy at T and p, J/kg/K; `entropy_noise` unless overridden."""

@@ -1,0 +1,1 @@
+"""The plugins that ship with lostwork, each registered through the entry-point group `lostwork`."""
