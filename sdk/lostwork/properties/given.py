@@ -1,0 +1,158 @@
+"""States handed in by a host program that has properties of its own."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from types import MappingProxyType
+from typing import Any
+
+import numpy as np
+
+from lostwork.errors import StateNotFound
+from lostwork.properties.backend import Column
+from lostwork.properties.datum import Datum
+from lostwork.quantities import (
+    PRESSURE,
+    SPECIFIC_ENERGY,
+    SPECIFIC_ENTROPY,
+    SPECIFIC_VOLUME,
+    TEMPERATURE,
+    to_si,
+)
+
+__all__ = ["GivenState"]
+
+
+class GivenState:
+    """h and s (and whatever else is known) handed in by a host program, without any backend.
+
+    Parameters
+    ----------
+    h, s
+        Specific enthalpy and entropy.
+    T, p, v
+        Optional; p and v are needed for a charge (`Content`), whose u follows from h, p and v.
+    datum
+        Name of the zero of h and s.  Only states of one datum are subtracted.
+    label
+        Name of the fluid, for messages.
+    """
+
+    __slots__ = ("_datum", "_label", "_si")
+
+    def __init__(
+        self,
+        *,
+        h: Any,
+        s: Any,
+        T: Any = None,
+        p: Any = None,
+        v: Any = None,
+        datum: str = "given",
+        label: str = "given state",
+    ) -> None:
+        si = _GivenSi(
+            h=to_si(h, SPECIFIC_ENERGY, "h"),
+            s=to_si(s, SPECIFIC_ENTROPY, "s"),
+            T=None if T is None else to_si(T, TEMPERATURE, "T"),
+            p=None if p is None else to_si(p, PRESSURE, "p"),
+            v=None if v is None else to_si(v, SPECIFIC_VOLUME, "v"),
+            label=label,
+        )
+        object.__setattr__(self, "_si", si)
+        object.__setattr__(self, "_datum", Datum(datum))
+        object.__setattr__(self, "_label", label)
+
+    def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"a GivenState cannot be changed: {name}")
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return _restored_given, (self._si, self._datum.label, self._label)
+
+    @property
+    def si(self) -> _GivenSi:
+        """Columns in SI."""
+        si: _GivenSi = self._si
+        return si
+
+    @property
+    def datum(self) -> Datum:
+        """Datum of h and s, by the name given."""
+        datum: Datum = self._datum
+        return datum
+
+    @property
+    def label(self) -> str:
+        """Name for messages."""
+        label: str = self._label
+        return label
+
+    @property
+    def failed(self) -> Mapping[int, str]:
+        """Nothing fails: values are given."""
+        return MappingProxyType({})
+
+    @property
+    def shape(self) -> tuple[int, ...]:
+        """Shape of the columns."""
+        return np.broadcast_shapes(np.shape(self.si.h), np.shape(self.si.s))
+
+    def __repr__(self) -> str:
+        return f"GivenState({self.label}: h = {self.si.h} J/kg, s = {self.si.s} J/kg/K)"
+
+
+class _GivenSi:
+    """Given columns; one that is missing says so when it is asked for."""
+
+    __slots__ = ("_label", "_values")
+
+    def __init__(self, *, label: str, **values: Column | None) -> None:
+        self._label = label
+        self._values = values
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return _restored_given_si, (self._label, self._values)
+
+    def _value(self, name: str) -> Column:
+        value = self._values[name]
+        if value is None:
+            raise StateNotFound(
+                fluid=self._label, given="h and s", reason=f"{name} is needed here; give {name}="
+            )
+        return value
+
+    @property
+    def h(self) -> Column:
+        return self._value("h")
+
+    @property
+    def s(self) -> Column:
+        return self._value("s")
+
+    @property
+    def T(self) -> Column:
+        return self._value("T")
+
+    @property
+    def p(self) -> Column:
+        return self._value("p")
+
+    @property
+    def v(self) -> Column:
+        return self._value("v")
+
+    @property
+    def u(self) -> Column:
+        return self._value("h") - self._value("p") * self._value("v")
+
+
+def _restored_given_si(label: str, values: dict[str, Column | None]) -> _GivenSi:
+    return _GivenSi(label=label, **values)
+
+
+def _restored_given(si: _GivenSi, datum: str, label: str) -> GivenState:
+    state = object.__new__(GivenState)
+    object.__setattr__(state, "_si", si)
+    object.__setattr__(state, "_datum", Datum(datum))
+    object.__setattr__(state, "_label", label)
+    return state
