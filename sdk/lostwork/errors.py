@@ -20,6 +20,7 @@ __all__ = [
     "CircularReference",
     "CompositionError",
     "DatumMismatch",
+    "DescriptorError",
     "FieldError",
     "GaugePressure",
     "IllPosed",
@@ -204,11 +205,17 @@ class PluginNotFound(PluginError, LookupError):
     kind: str
     name: str
     installed: tuple[str, ...] = ()
+    failed: tuple[str, ...] = ()
 
     @property
     def message(self) -> str:
         known = ", ".join(self.installed) if self.installed else "none"
-        return _sentence(f"no {self.kind} is called {self.name!r}", f"Installed: {known}")
+        mute = f"Not loaded, so what they offer is not known: {', '.join(self.failed)}"
+        return _sentence(
+            f"no {self.kind} is called {self.name!r}",
+            f"Installed: {known}",
+            mute if self.failed else "",
+        )
 
 
 @dataclass(eq=False)
@@ -239,6 +246,22 @@ class PluginFailed(PluginError, ImportError):
     @property
     def message(self) -> str:
         return _sentence(f"plugin {self.plugin!r} failed at {self.stage}: {self.reason}", self.fix)
+
+
+@dataclass(eq=False)
+class DescriptorError(PluginError, ValueError):
+    """A field of a descriptor is malformed."""
+
+    descriptor: str
+    field: str
+    value: str
+    expected: str
+
+    @property
+    def message(self) -> str:
+        return _sentence(
+            f"descriptor {self.descriptor!r}, {self.field}: {self.value} is not {self.expected}"
+        )
 
 
 @dataclass(eq=False)
