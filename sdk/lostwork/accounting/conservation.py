@@ -1,0 +1,134 @@
+"""Whether the matter of a balance can be one set of books: datums, components, elements.
+
+A kilogram of oxygen that leaves as a kilogram of nitrogen closes in mass and is nonsense all the
+same, so compositions are compared component by component, and element by element where components
+are made or consumed.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import TypeAlias
+
+import numpy as np
+
+from lostwork.errors import DatumMismatch
+from lostwork.properties.backend import Column
+from lostwork.properties.components import Component
+from lostwork.properties.formation import formation
+from lostwork.properties.state import Matter, State
+
+__all__ = ["Conservation", "Entry", "check_datums", "conservation"]
+
+Entry: TypeAlias = tuple[Matter, Column]
+"""Matter and its signed mass: positive what comes in or stood inside before."""
+
+
+@dataclass(frozen=True)
+class Conservation:
+    """What became of the components: one composition, conserved, reacting, or not closing."""
+
+    one_composition: bool
+    reacting: bool
+    residual: Column
+    """Largest residual of a component (of an element, where components react), as a fraction."""
+    worst: str
+    """The component or element with the largest residual."""
+
+
+def check_datums(matter: Iterable[Matter]) -> None:
+    """Refuse to subtract across datums.
+
+    Raises
+    ------
+    DatumMismatch
+        Two of the states count h and s from different zeros.
+    """
+    first: Matter | None = None
+    for state in matter:
+        if first is None:
+            first = state
+        elif state.datum != first.datum:
+            raise DatumMismatch(
+                first=first.label, second=state.label, reason=f"{first.datum} against {state.datum}"
+            )
+
+
+def conservation(entries: list[Entry], closing: float) -> Conservation:
+    """Compare the components that enter with those that leave.
+
+    Parameters
+    ----------
+    entries
+        Every stream and content with its signed mass.
+    closing
+        Fraction of the largest flow within which a component counts as conserved.
+
+    Raises
+    ------
+    DatumMismatch
+        Components react, and one of them has no formation data.
+    """
+    states = [(state, mass) for state, mass in entries if isinstance(state, State)]
+    if len(states) < len(entries) or _same_composition(states):
+        return Conservation(True, reacting=False, residual=0.0, worst="")
+    by_component: dict[Component, list[Column]] = {}
+    for state, mass in states:
+        spec = state.fluid.spec
+        for component, fraction in zip(spec.components, spec.mass_fractions, strict=True):
+            by_component.setdefault(component, []).append(mass * fraction)
+    total = sum(np.abs(mass) for _, mass in states)
+    residual, worst = _largest({c.name: sum(m) / total for c, m in by_component.items()})
+    if np.all(np.asarray(residual) <= closing):
+        return Conservation(False, reacting=False, residual=residual, worst=worst)
+    return _by_elements(by_component)
+
+
+def _same_composition(states: list[tuple[State, Column]]) -> bool:
+    first = states[0][0].fluid.spec if states else None
+    return all(
+        state.fluid.spec is first
+        or (
+            first is not None
+            and state.fluid.spec.components == first.components
+            and np.allclose(
+                state.fluid.spec.mole_fractions, first.mole_fractions, rtol=0.0, atol=1e-12
+            )
+        )
+        for state, _ in states
+    )
+
+
+def _by_elements(by_component: dict[Component, list[Column]]) -> Conservation:
+    atoms: dict[str, list[Column]] = {}
+    gross: Column = 0.0
+    for component, masses in by_component.items():
+        for element, count in component.elements:
+            amounts = [count * mass / component.molar_mass for mass in masses]
+            atoms.setdefault(element, []).extend(amounts)
+            gross = gross + sum(np.abs(amount) for amount in amounts)
+    residual, worst = _largest({element: sum(n) / gross for element, n in atoms.items()})
+    unformed = [
+        component.name
+        for component, masses in by_component.items()
+        if formation(component) is None and np.any(np.abs(sum(masses)) > 1e-9 * _gross(masses))
+    ]
+    if unformed:
+        raise DatumMismatch(
+            first=unformed[0],
+            second="the components it reacts with",
+            reason="it is made or consumed and no formation data are known for it",
+        )
+    return Conservation(False, reacting=True, residual=residual, worst=worst)
+
+
+def _gross(masses: list[Column]) -> Column:
+    return sum(np.abs(mass) for mass in masses)
+
+
+def _largest(residuals: dict[str, Column]) -> tuple[Column, str]:
+    worst = max(residuals, key=lambda name: float(np.nanmax(np.abs(residuals[name]))))
+    stacked = np.broadcast_arrays(*(np.abs(value) for value in residuals.values()))
+    largest = np.max(np.stack(stacked), axis=0)
+    return (largest if largest.shape else float(largest)), worst
