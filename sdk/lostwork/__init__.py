@@ -29,7 +29,7 @@ _HOMES = {
     "lostwork.accounting.comparison": ("Comparison", "compare"),
     "lostwork.accounting.flows": ("GRAVITY", "Content", "Heat", "Stream", "Work"),
     "lostwork.accounting.losses": ("MECHANISMS", "Purpose"),
-    "lostwork.accounting.path": ("Path",),
+    "lostwork.accounting.path": ("Path", "Shortfall"),
     "lostwork.accounting.surroundings": ("Surroundings",),
     "lostwork.accounting.verdict": ("Status", "Verdict"),
     "lostwork.plugins": (
@@ -82,6 +82,7 @@ _HOMES = {
     "lostwork.properties.datum": ("Datum",),
     "lostwork.properties.fluid": ("Fluid",),
     "lostwork.properties.given": ("GivenState",),
+    "lostwork.properties.rootfinding": ("bracketed_root",),
     "lostwork.properties.state": ("Change", "State"),
     "lostwork.quantities": (
         "FRACTION",

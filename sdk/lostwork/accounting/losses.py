@@ -16,6 +16,7 @@ MECHANISMS = (
     "heat transfer",
     "mixing",
     "sudden expansion",
+    "sudden compression",
     "electric dissipation",
     "reaction",
     "not attributed",

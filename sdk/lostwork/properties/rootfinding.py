@@ -15,7 +15,9 @@ from typing import TypeAlias
 import numpy as np
 import numpy.typing as npt
 
-__all__ = ["Bracket", "Rows", "find_brackets", "solve_brackets"]
+from lostwork.properties.backend import Column
+
+__all__ = ["Bracket", "Rows", "bracketed_root", "find_brackets", "solve_brackets"]
 
 Vector: TypeAlias = npt.NDArray[np.float64]
 Rows: TypeAlias = npt.NDArray[np.intp]
@@ -178,3 +180,46 @@ def _next_fraction(
         t = np.where(safe & np.isfinite(inverse), inverse, 0.5)
         margin = np.where(width > 0.0, np.minimum(0.5, tol / (2.0 * width)), 0.5)
     return np.clip(t, margin, 1.0 - margin)
+
+
+def bracketed_root(
+    residual: Callable[[Column], Column], low: Column, high: Column, *, relative: float = 1e-14
+) -> Column:
+    """Root of a monotone function between `low` and `high`, row by row.
+
+    Parameters
+    ----------
+    residual
+        f(x) of floats or of arrays, in the shape of `low` and `high` broadcast together.
+    low, high
+        Ends of the bracket, floats or arrays.
+    relative
+        Width of the bracket, relative to the root, at which a row is done.
+
+    Returns
+    -------
+    float or array
+        NaN where f does not change sign between the ends, or has no value.
+    """
+    shape = np.broadcast_shapes(np.shape(low), np.shape(high))
+    a = np.array(np.broadcast_to(high, shape), dtype=np.float64).ravel()
+    b = np.array(np.broadcast_to(low, shape), dtype=np.float64).ravel()
+
+    def whole(x: Vector) -> Vector:
+        value = residual(x.reshape(shape)) if shape else residual(float(x[0]))
+        return np.array(np.broadcast_to(value, shape), dtype=np.float64).ravel()
+
+    fa, fb = whole(a), whole(b)
+    every = np.arange(a.size)
+    crossed = np.sign(fa) * np.sign(fb) <= 0.0
+    filled = np.where(crossed, a, np.nan)
+
+    def of_rows(x: Vector, rows: Rows) -> Vector:
+        trial = filled.copy()
+        trial[rows] = x
+        return whole(np.where(np.isnan(trial), a, trial))[rows]
+
+    bracket = Bracket(every[crossed], b[crossed], a[crossed], fb[crossed], fa[crossed])
+    root = np.full(a.size, np.nan)
+    root[crossed] = solve_brackets(of_rows, bracket, relative=relative)
+    return root.reshape(shape) if shape else float(root[0])
