@@ -1,0 +1,22 @@
+"""Property backend on CoolProp: reference equations of pure fluids, pseudo-pure ones, mixtures."""
+
+from __future__ import annotations
+
+from lostwork import BackendDescriptor, hookimpl
+
+__all__ = ["lostwork_backends"]
+
+
+@hookimpl
+def lostwork_backends() -> list[BackendDescriptor]:
+    """Offer the backend "coolprop"; CoolProp itself is imported at first use."""
+    return [
+        BackendDescriptor(
+            name="coolprop",
+            summary="Helmholtz-energy equations of pure fluids and their mixtures, by CoolProp",
+            target="lostwork_plugins.coolprop.backend:CoolPropBackend",
+            api_version=1,
+            extra="coolprop",
+            requires=("CoolProp",),
+        )
+    ]
