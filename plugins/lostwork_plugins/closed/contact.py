@@ -114,8 +114,9 @@ class Equilibration(Process):
             return state.fluid.state_si(("T", "v"), T, state.si.v)
 
         def excess(T: Column) -> Column:
-            inside: Column = ma * getattr(at(a, T).si, energy) + mb * getattr(at(b, T).si, energy)
-            return inside - total
+            inside = ma * getattr(at(a, T).si, energy) + mb * getattr(at(b, T).si, energy)
+            left: Column = inside - total
+            return left
 
         T = bracketed_root(
             excess, np.minimum(a.si.T, b.si.T) + 0.0 * ma, np.maximum(a.si.T, b.si.T) + 0.0 * mb
@@ -126,7 +127,7 @@ class Equilibration(Process):
                 reason="no common temperature was found between those of the two charges",
             )
         a_end, b_end = at(a, T), at(b, T)
-        work = ()
+        work: tuple[Work, ...] = ()
         if self.held == "p":
             pushed = -ma * a.si.p * (a_end.si.v - a.si.v) - mb * b.si.p * (b_end.si.v - b.si.v)
             work = (Work.from_si(pushed, per_time=False, name="boundary"),)

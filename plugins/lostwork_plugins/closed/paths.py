@@ -92,7 +92,7 @@ class QuasiStaticPath(Process):
 
     def purpose(self, balance: Balance) -> Purpose | None:
         """Useful work from exergy when the charge grows, exergy from useful work when it shrinks."""
-        grows = np.asarray(balance.books.volume_change) > 0.0
+        grows = np.asarray(balance.books.entries.volume_change) > 0.0
         if np.all(grows):
             return given_by_expansion(balance)
         return taken_by_compression(balance) if not np.any(grows) else None

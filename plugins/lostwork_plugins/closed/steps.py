@@ -70,7 +70,7 @@ class _Stepped(Process):
         """End state, boundary work and heat from the reservoir."""
         path = self.path()
         mass = self.charge.mass_si
-        heat = ()
+        heat: tuple[Heat, ...] = ()
         if self.held == "T":
             q = mass * path.heat.magnitude
             heat = (Heat.from_si(q, path.start.si.T, per_time=False, name="reservoir"),)

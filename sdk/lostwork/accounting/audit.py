@@ -48,7 +48,7 @@ class Finding:
 
 @dataclass(frozen=True)
 class Ranked:
-    """One step in order of its loss.  `work_lost` and `share` are means over the rows of an array."""
+    """One step in order of its loss; over the rows of an array, figures are means."""
 
     rank: int
     name: str
@@ -72,6 +72,8 @@ class Audit:
         One per step, names all different.
     checks
         Whether the checks of installed plugins are run.
+    remarks
+        Findings of whoever put the balances together; they stand before those of the checks.
 
     Raises
     ------
@@ -80,7 +82,13 @@ class Audit:
         that leaves or enters more than one step.
     """
 
-    def __init__(self, balances: Iterable[Balance], *, checks: bool = True) -> None:
+    def __init__(
+        self,
+        balances: Iterable[Balance],
+        *,
+        checks: bool = True,
+        remarks: Iterable[Finding] = (),
+    ) -> None:
         self.balances: tuple[Balance, ...] = tuple(balances)
         self._require_one_frame()
         self.surroundings = self.balances[0].surroundings
@@ -90,7 +98,8 @@ class Audit:
         self._open_streams, stream_links = streams
         self._open_contents, content_links = contents
         self.links: tuple[Link, ...] = (*stream_links, *content_links)
-        self.findings: tuple[Finding, ...] = _run_checks(self.balances) if checks else ()
+        found = _run_checks(self.balances) if checks else ()
+        self.findings: tuple[Finding, ...] = (*remarks, *found)
 
     @cached_property
     def whole(self) -> Balance | None:
@@ -142,7 +151,7 @@ class Audit:
     @property
     def work_total(self) -> Quantity:
         """Work into all steps together, W (or J)."""
-        total = sum(b.books.work_total for b in self.balances)
+        total = sum(b.books.entries.work_total for b in self.balances)
         return quantity(total, "W" if self.per_time else "J")
 
     @cached_property
@@ -156,7 +165,7 @@ class Audit:
 
     @property
     def status(self) -> Status:
-        """The gravest status of any step; `unbalanced` where a shared stream differs at its ends."""
+        """The gravest status of any step; a shared stream that differs at its ends is unbalanced."""
         statuses = {balance.verdict.status for balance in self.balances}
         if any(link.mismatch for link in self.links):
             statuses.add(Status.unbalanced)

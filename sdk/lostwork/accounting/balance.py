@@ -10,10 +10,13 @@ from typing import Any, TypeAlias
 import numpy as np
 import pint
 
-from lostwork.accounting.books import Books, Exergy, exergy_route, keep_books
-from lostwork.accounting.flows import Content, Heat, Stream, Work
+from lostwork.accounting.books import Books, keep_books
+from lostwork.accounting.exergy import Exergy, exergy_route
+from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.losses import Purpose
 from lostwork.accounting.surroundings import Surroundings
+from lostwork.accounting.transfers import Heat, Work
+from lostwork.accounting.unknowns import collect
 from lostwork.accounting.verdict import Status, Verdict, judge
 from lostwork.errors import BalanceNotClosed, InternalDisagreement, SecondLawViolation
 from lostwork.properties.backend import Column
@@ -84,7 +87,7 @@ class Balance:
         self._mechanisms = dict(mechanisms or {})
         self._remainder = remainder
         self._purpose = purpose
-        self.books: Books = keep_books(
+        entries = collect(
             name,
             inflows,
             outflows,
@@ -92,44 +95,43 @@ class Balance:
             work,
             (before,) if isinstance(before, Content) else before,
             (after,) if isinstance(after, Content) else after,
-            surroundings,
-            self.closing,
         )
+        self.books: Books = keep_books(name, entries, surroundings.si.T, self.closing)
 
     @property
     def inflows(self) -> tuple[Stream, ...]:
         """Streams in, every rate known."""
-        return self.books.inflows
+        return self.books.entries.inflows
 
     @property
     def outflows(self) -> tuple[Stream, ...]:
         """Streams out, every rate known."""
-        return self.books.outflows
+        return self.books.entries.outflows
 
     @property
     def heat(self) -> tuple[Heat, ...]:
         """Heats, every amount known."""
-        return self.books.heat
+        return self.books.entries.heat
 
     @property
     def work(self) -> tuple[Work, ...]:
         """Works, every amount known."""
-        return self.books.work
+        return self.books.entries.work
 
     @property
     def before(self) -> tuple[Content, ...]:
         """Contents before."""
-        return self.books.before
+        return self.books.entries.before
 
     @property
     def after(self) -> tuple[Content, ...]:
         """Contents after."""
-        return self.books.after
+        return self.books.entries.after
 
     @property
     def per_time(self) -> bool:
         """Whether figures are rates (W, W/K) or totals (J, J/K)."""
-        return self.books.per_time
+        return self.books.entries.per_time
 
     @property
     def shape(self) -> tuple[int, ...]:
@@ -170,7 +172,7 @@ class Balance:
     @property
     def work_total(self) -> Quantity:
         """Actual work, positive into the system, W (or J)."""
-        return quantity(self.books.work_total, self._energy_unit)
+        return quantity(self.books.entries.work_total, self._energy_unit)
 
     @property
     def work_useful(self) -> Quantity:
@@ -179,7 +181,7 @@ class Balance:
         An expanding content pushes the atmosphere away; p0 dV of its work is of no use to anyone.
         """
         p0 = self.surroundings.si.p
-        useful = self.books.work_total + p0 * self.books.volume_change
+        useful = self.books.entries.work_total + p0 * self.books.entries.volume_change
         return quantity(useful, self._energy_unit)
 
     @property
@@ -190,12 +192,12 @@ class Balance:
         turbine that gives 4 MW and loses 1 MW has -5 MW here; a compressor that takes 58 kW and
         loses 6 kW has +52 kW.
         """
-        return quantity(self.books.work_total - self.work_lost_si, self._energy_unit)
+        return quantity(self.books.entries.work_total - self.work_lost_si, self._energy_unit)
 
     @property
     def heat_total(self) -> Quantity:
         """All heat, positive into the system, W (or J)."""
-        return quantity(self.books.heat_total, self._energy_unit)
+        return quantity(self.books.entries.heat_total, self._energy_unit)
 
     @property
     def mass_residual(self) -> Quantity:
@@ -235,7 +237,7 @@ class Balance:
         rest = self.work_lost_si - sum(parts.values()) if parts else self.work_lost_si
         if not parts or np.any(np.abs(rest) > T0 * (self.books.noise + self.books.hidden)):
             parts[self._remainder] = parts.get(self._remainder, 0.0) + rest
-        return MappingProxyType(parts)
+        return parts
 
     @property
     def losses(self) -> Mapping[str, Quantity]:

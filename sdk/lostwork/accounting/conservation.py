@@ -9,20 +9,17 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
-from typing import TypeAlias
 
 import numpy as np
 
+from lostwork.accounting.entries import Entry, summed
 from lostwork.errors import DatumMismatch
 from lostwork.properties.backend import Column
 from lostwork.properties.components import Component
 from lostwork.properties.formation import formation
 from lostwork.properties.state import Matter, State
 
-__all__ = ["Conservation", "Entry", "check_datums", "conservation"]
-
-Entry: TypeAlias = tuple[Matter, Column]
-"""Matter and its signed mass: positive what comes in or stood inside before."""
+__all__ = ["Conservation", "check_datums", "conservation"]
 
 
 @dataclass(frozen=True)
@@ -78,8 +75,8 @@ def conservation(entries: list[Entry], closing: float) -> Conservation:
         spec = state.fluid.spec
         for component, fraction in zip(spec.components, spec.mass_fractions, strict=True):
             by_component.setdefault(component, []).append(mass * fraction)
-    total = sum(np.abs(mass) for _, mass in states)
-    residual, worst = _largest({c.name: sum(m) / total for c, m in by_component.items()})
+    total = summed(np.abs(mass) for _, mass in states)
+    residual, worst = _largest({c.name: summed(m) / total for c, m in by_component.items()})
     if np.all(np.asarray(residual) <= closing):
         return Conservation(False, reacting=False, residual=residual, worst=worst)
     return _by_elements(by_component)
@@ -107,12 +104,12 @@ def _by_elements(by_component: dict[Component, list[Column]]) -> Conservation:
         for element, count in component.elements:
             amounts = [count * mass / component.molar_mass for mass in masses]
             atoms.setdefault(element, []).extend(amounts)
-            gross = gross + sum(np.abs(amount) for amount in amounts)
-    residual, worst = _largest({element: sum(n) / gross for element, n in atoms.items()})
+            gross = gross + summed(np.abs(amount) for amount in amounts)
+    residual, worst = _largest({element: summed(n) / gross for element, n in atoms.items()})
     unformed = [
         component.name
         for component, masses in by_component.items()
-        if formation(component) is None and np.any(np.abs(sum(masses)) > 1e-9 * _gross(masses))
+        if formation(component) is None and np.any(np.abs(summed(masses)) > 1e-9 * _gross(masses))
     ]
     if unformed:
         raise DatumMismatch(
@@ -124,7 +121,7 @@ def _by_elements(by_component: dict[Component, list[Column]]) -> Conservation:
 
 
 def _gross(masses: list[Column]) -> Column:
-    return sum(np.abs(mass) for mass in masses)
+    return summed(np.abs(mass) for mass in masses)
 
 
 def _largest(residuals: dict[str, Column]) -> tuple[Column, str]:

@@ -37,6 +37,9 @@ class Surroundings:
 
     __slots__ = ("_dead_states", "_si")
 
+    _si: SiSurroundings
+    _dead_states: dict[Fluid, DeadState | PropertyError]
+
     def __init__(self, *, T: Any, p: Any) -> None:
         si = SiSurroundings(to_si(T, TEMPERATURE, "T0"), to_si(p, PRESSURE, "p0"))
         object.__setattr__(self, "_si", si)
@@ -48,8 +51,7 @@ class Surroundings:
     @property
     def si(self) -> SiSurroundings:
         """T0 and p0 in SI."""
-        si: SiSurroundings = self._si
-        return si
+        return self._si
 
     @property
     def T(self) -> pint.Quantity[Any]:
@@ -70,7 +72,7 @@ class Surroundings:
             The fluid has no state there: frozen, boiling at just this T0 and p0, or outside its
             model.
         """
-        known: dict[Fluid, DeadState | PropertyError] = self._dead_states
+        known = self._dead_states
         if fluid not in known:
             known[fluid] = self._computed(fluid)
         found = known[fluid]

@@ -124,8 +124,10 @@ def judge(books: Books, closing: float, stated_closing: bool) -> Verdict:
         ],
         default=Status.reversible.value,
     )
-    verdict = Verdict(statuses, sigma, tolerance, books.per_time, "")
-    return Verdict(statuses, sigma, tolerance, books.per_time, _reason(verdict, books, closing))
+    verdict = Verdict(statuses, sigma, tolerance, books.entries.per_time, "")
+    return Verdict(
+        statuses, sigma, tolerance, books.entries.per_time, _reason(verdict, books, closing)
+    )
 
 
 def _reason(verdict: Verdict, books: Books, closing: float) -> str:
@@ -139,7 +141,7 @@ def _reason(verdict: Verdict, books: Books, closing: float) -> str:
 
 
 def _said_of(status: Status, books: Books, verdict: Verdict, row: int, closing: float) -> str:
-    entropy, mass, energy = ("W/K", "kg/s", "W") if books.per_time else ("J/K", "kg", "J")
+    entropy, mass, energy = ("W/K", "kg/s", "W") if books.entries.per_time else ("J/K", "kg", "J")
     shape = verdict.statuses.shape
 
     def at(value: Column) -> float:

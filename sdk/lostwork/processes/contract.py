@@ -28,9 +28,10 @@ import pint
 from pydantic import BaseModel, ConfigDict, ValidationError
 
 from lostwork.accounting.balance import Balance
-from lostwork.accounting.flows import Content, Heat, Stream, Work
+from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.losses import Purpose
 from lostwork.accounting.surroundings import Surroundings
+from lostwork.accounting.transfers import Heat, Work
 from lostwork.errors import FieldError, ProcessError
 from lostwork.plugins import plugins
 from lostwork.properties.backend import Column

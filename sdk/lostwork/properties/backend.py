@@ -34,7 +34,6 @@ __all__ = [
     "DETERMINING_PAIRS",
     "REFERENCE_PRESSURE",
     "REFERENCE_TEMPERATURE",
-    "R",
     "Backend",
     "Columns",
     "Critical",
@@ -43,6 +42,7 @@ __all__ = [
     "Pair",
     "PhaseSplit",
     "PropertyModel",
+    "R",
 ]
 
 Column: TypeAlias = "float | npt.NDArray[np.float64]"
@@ -199,8 +199,10 @@ class Backend(ABC):
     def open(self, spec: FluidSpec, options: Mapping[str, Any]) -> PropertyModel:
         """Open a model; heavy libraries are imported here, not before.
 
-        Raises `PropertyError` (or `UnknownComponent`) for what the backend does not know, and for an
-        option it does not have.
+        Raises
+        ------
+        PropertyError, UnknownComponent
+            The backend does not know the fluid, or has no such option.
         """
 
     def composition(self, name: str) -> Mapping[str, float] | None:

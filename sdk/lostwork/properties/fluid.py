@@ -85,6 +85,8 @@ class Fluid:
 
     __slots__ = ("_model", "_shift", "backend", "options", "spec")
 
+    _model: PropertyModel
+    _shift: Shift
     spec: FluidSpec
     """Components and mole fractions."""
     backend: str

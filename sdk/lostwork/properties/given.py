@@ -40,6 +40,10 @@ class GivenState:
 
     __slots__ = ("_datum", "_label", "_si")
 
+    _si: _GivenSi
+    _datum: Datum
+    _label: str
+
     def __init__(
         self,
         *,
@@ -72,20 +76,17 @@ class GivenState:
     @property
     def si(self) -> _GivenSi:
         """Columns in SI."""
-        si: _GivenSi = self._si
-        return si
+        return self._si
 
     @property
     def datum(self) -> Datum:
         """Datum of h and s, by the name given."""
-        datum: Datum = self._datum
-        return datum
+        return self._datum
 
     @property
     def label(self) -> str:
         """Name for messages."""
-        label: str = self._label
-        return label
+        return self._label
 
     @property
     def failed(self) -> Mapping[int, str]:

@@ -93,10 +93,8 @@ def solve_pair(model: PropertyModel, pair: Pair, x: Column, y: Column, *, pure: 
     if isinstance(x, np.ndarray):
         return _solve_columns(model, pair, x, np.asarray(y, dtype=np.float64), pure)
     columns = _solve_columns(model, pair, np.array([x]), np.array([y]), pure)
-    return Columns(
-        *(float(getattr(columns, name)[0]) for name in ("T", "p", "v", "h", "s", "quality")),
-        failed=columns.failed,
-    )
+    values = {name: float(value_of(columns, name)[0]) for name in _Assembly.NAMES}
+    return Columns(**values, failed=columns.failed)
 
 
 def _solve_columns(model: PropertyModel, pair: Pair, x: Vector, y: Vector, pure: bool) -> Columns:
@@ -233,10 +231,10 @@ def _bracket_and_solve(
 class _Assembly:
     """Columns filled group by group; what is never filled has no state."""
 
-    _NAMES = ("T", "p", "v", "h", "s", "quality")
+    NAMES = ("T", "p", "v", "h", "s", "quality")
 
     def __init__(self, size: int) -> None:
-        self._data = {name: np.full(size, np.nan) for name in self._NAMES}
+        self._data = {name: np.full(size, np.nan) for name in self.NAMES}
         self._filled = np.zeros(size, dtype=bool)
         self._failed: dict[int, str] = {}
 
@@ -244,7 +242,7 @@ class _Assembly:
         self, rows: Rows, columns: Columns, chosen: npt.NDArray[np.bool_] | None = None
     ) -> None:
         picked = np.flatnonzero(chosen) if chosen is not None else np.arange(rows.size)
-        for name in self._NAMES:
+        for name in self.NAMES:
             self._data[name][rows] = np.asarray(getattr(columns, name))[picked]
         self._filled[rows] = True
         for place, row in zip(picked, rows, strict=True):

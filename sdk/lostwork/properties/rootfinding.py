@@ -41,7 +41,7 @@ class Bracket:
 
 
 def find_brackets(residual: Residual, low: Vector, high: Vector, grid: int = GRID) -> Bracket:
-    """Scan from `low` to `high` and keep, row by row, the first pair of neighbours that change sign.
+    """Scan from `low` to `high`, row by row, for the first pair of neighbours that change sign.
 
     Where none do, the edge between a point that has a state and one that has none is searched by
     halving, since the root may lie between the last good point and that edge.
@@ -78,15 +78,14 @@ def _search_edges(residual: Residual, points: Vector, values: Vector, rows: Rows
         brackets.append(_halve_towards(residual, points, values, rows[inside], last[inside], step))
     upper, lower = brackets
     fresh = ~np.isin(lower.rows, upper.rows)
-    return _joined(
-        upper,
-        Bracket(
-            *(
-                column[fresh]
-                for column in (lower.rows, lower.low, lower.high, lower.f_low, lower.f_high)
-            )
-        ),
+    kept = Bracket(
+        lower.rows[fresh],
+        lower.low[fresh],
+        lower.high[fresh],
+        lower.f_low[fresh],
+        lower.f_high[fresh],
     )
+    return _joined(upper, kept)
 
 
 def _halve_towards(

@@ -16,11 +16,11 @@ from lostwork.errors import DatumMismatch, StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.datum import Datum
 from lostwork.quantities import (
+    PRESSURE,
     SPECIFIC_ENERGY,
     SPECIFIC_ENTROPY,
     SPECIFIC_VOLUME,
     TEMPERATURE,
-    PRESSURE,
     in_unit,
     quantity,
 )
@@ -121,6 +121,10 @@ class State:
 
     __slots__ = ("_failed", "_fluid", "_si")
 
+    _fluid: Fluid
+    _si: SiState
+    _failed: Mapping[int, str]
+
     def __init__(self, fluid: Fluid, si: SiState, failed: Mapping[int, str]) -> None:
         put = object.__setattr__
         put(self, "_fluid", fluid)
@@ -133,20 +137,17 @@ class State:
     @property
     def fluid(self) -> Fluid:
         """The fluid, with its backend."""
-        fluid: Fluid = self._fluid
-        return fluid
+        return self._fluid
 
     @property
     def si(self) -> SiState:
         """Columns in SI: T p v rho h s u quality."""
-        si: SiState = self._si
-        return si
+        return self._si
 
     @property
     def failed(self) -> Mapping[int, str]:
         """Rows without a state: flat index and reason."""
-        failed: Mapping[int, str] = self._failed
-        return failed
+        return self._failed
 
     @property
     def datum(self) -> Datum:
@@ -238,7 +239,7 @@ class State:
         return quantity(exergy, "J/kg")
 
     def isclose(self, other: State, *, relative: float = 1e-9) -> Any:
-        """Whether p, T and v agree within a relative tolerance, row by row (a float gives a bool)."""
+        """Whether T, p and v agree within a relative tolerance, row by row."""
         if self.fluid != other.fluid:
             return False
         pairs = ((self.si.T, other.si.T), (self.si.p, other.si.p), (self.si.v, other.si.v))

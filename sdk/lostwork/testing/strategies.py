@@ -50,11 +50,11 @@ def pressures(*, low: float = 1e3, high: float = 1e7) -> st.SearchStrategy[Any]:
 
 
 @st.composite
-def compositions(draw: st.DrawFn, *, components: Sequence[str]) -> dict[str, float]:
+def compositions(draw: st.DrawFn, /, *, components: Sequence[str]) -> dict[str, float]:
     """Mole fractions of `components`, from near-uniform to near-pure, summing to one."""
     nearly_pure = draw(st.booleans())
     largest = draw(st.integers(0, len(components) - 1))
-    weights = [draw(st.integers(1, 100)) for _ in components]
+    weights = [float(draw(st.integers(1, 100))) for _ in components]
     if nearly_pure:
         weights = [1e-4 * w for w in weights]
         weights[largest] = 100.0
@@ -67,7 +67,7 @@ def compositions(draw: st.DrawFn, *, components: Sequence[str]) -> dict[str, flo
 
 @st.composite
 def surroundings(
-    draw: st.DrawFn, *, T_low: float = 250.0, T_high: float = 320.0
+    draw: st.DrawFn, /, *, T_low: float = 250.0, T_high: float = 320.0
 ) -> Surroundings:
     """Surroundings from an arctic to a desert site, 0.7 to 1.1 bar."""
     T = draw(_steps(T_low, T_high, 0.5, 288.0))
@@ -95,14 +95,14 @@ def states(
 
 
 @st.composite
-def streams(draw: st.DrawFn, *, fluid: Fluid, name: str = "", **region: float) -> Stream:
+def streams(draw: st.DrawFn, /, *, fluid: Fluid, name: str = "", **region: float) -> Stream:
     """Streams of `fluid` of 0.1 to 10 kg/s in a region as for `states`."""
     state = draw(states(fluid=fluid, **region))
     return Stream(state, rate=quantity(draw(_steps(0.1, 10.0, 0.1, 1.0)), "kg/s"), name=name)
 
 
 @st.composite
-def contents(draw: st.DrawFn, *, fluid: Fluid, name: str = "", **region: float) -> Content:
+def contents(draw: st.DrawFn, /, *, fluid: Fluid, name: str = "", **region: float) -> Content:
     """Charges of `fluid` of 0.1 to 10 kg in a region as for `states`."""
     state = draw(states(fluid=fluid, **region))
     return Content(state, mass=quantity(draw(_steps(0.1, 10.0, 0.1, 1.0)), "kg"), name=name)
