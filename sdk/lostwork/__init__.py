@@ -477,7 +477,9 @@ def __getattr__(name: str) -> Any:
     home = _HOME_OF.get(name)
     if home is None:
         raise AttributeError(f"module 'lostwork' has no attribute {name!r}")
-    value = getattr(importlib.import_module(home), name)
+    module = importlib.import_module(home)
+    # `plugins` is a folder and a call; the folder can be called, and is what Python binds here.
+    value = module if home == f"{__name__}.{name}" else getattr(module, name)
     globals()[name] = value
     return value
 

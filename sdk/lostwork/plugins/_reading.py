@@ -281,6 +281,9 @@ def _faults(plugin: Any) -> Iterator[tuple[str, str]]:
 
 
 def _unknown_hook(name: str) -> tuple[str, str]:
-    nearest = difflib.get_close_matches(name, OFFERED, n=1, cutoff=0.6)
-    known = f"Did you mean {nearest[0]}?" if nearest else f"The hooks are {', '.join(OFFERED)}"
-    return f"there is no hook {name}", known
+    # All names share the prefix, which would make any two of them look alike.
+    hooks_by_end = {hook.removeprefix(_PREFIX): hook for hook in OFFERED}
+    nearest = difflib.get_close_matches(name.removeprefix(_PREFIX), hooks_by_end, n=1, cutoff=0.6)
+    if nearest:
+        return f"there is no hook {name}", f"Perhaps {hooks_by_end[nearest[0]]} is meant"
+    return f"there is no hook {name}", f"The hooks are {', '.join(OFFERED)}"
