@@ -27,7 +27,6 @@ from lostwork import (
     PairRefused,
     PhaseSplit,
     PropertyModel,
-    R,
     StateNotFound,
 )
 from lostwork_plugins.coolprop.bounds import bounds_of, common_bounds, limits_of
@@ -80,6 +79,8 @@ class MixtureModel(PropertyModel):
         _refuse_unknown_pairs(self._name, self.fluids, spec)
         pures = [AbstractState("HEOS", fluid) for fluid in self.fluids]
         self.molar_mass = self._mean([pure.molar_mass() for pure in pures])
+        # The mean that `PhaseEquation` works with, not the exact constant.
+        self._gas_constant = self._mean([pure.gas_constant() for pure in pures])
         parts = [bounds_of(pure, fluid) for pure, fluid in zip(pures, self.fluids, strict=True)]
         self._bounds = common_bounds(self._name, parts)
         self.limits = limits_of(self._bounds, _LEAST_PRESSURE, source_of(self.fluids))
@@ -108,7 +109,7 @@ class MixtureModel(PropertyModel):
 
         Each component stands at zero there, so that only the mixing entropy is left.
         """
-        mixing = -R * sum(x * math.log(x) for x in self._z)
+        mixing = -self._gas_constant * sum(x * math.log(x) for x in self._z)
         return 0.0, mixing / self.molar_mass
 
     def critical(self) -> Critical:

@@ -29,6 +29,7 @@ _POSITION = {"h": 3, "s": 4}
 # dh = T ds: 1e-7 J/kg is 3e-10 J/kg/K.
 _TOLERANCE = {"h": 1e-7, "s": 1e-10}
 _QUALITY_TOLERANCE = 1e-13
+_ON_LINE = 1e-6
 
 Numbers = tuple[float, float, float, float, float, float]
 
@@ -180,8 +181,10 @@ class MixtureStates:
         self._ratios = phases.ln_K
 
         def excess(unknown: float) -> float:
-            state = self._at(*self._place(held, value, unknown))
-            found = float(edge) if math.isnan(state[5]) else state[5]
+            found = self._at(*self._place(held, value, unknown))[5]
+            if math.isnan(found):  # still on the line it set out from, or across the dome already
+                near = abs(unknown - start) <= _ON_LINE * abs(start)
+                found = float(edge if near else 1 - edge)
             return found - quality
 
         bounds = self._bounds
