@@ -6,7 +6,6 @@ from collections.abc import Mapping
 from typing import Any
 
 from lostwork import Backend, FluidSpec, Limits, OutOfLimits, PropertyModel, R
-
 from lostwork_plugins.ideal_gas.constant import ConstantHeatCapacity
 from lostwork_plugins.ideal_gas.correlations import (
     WIDEST_RANGE,

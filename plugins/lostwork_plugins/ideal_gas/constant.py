@@ -7,6 +7,7 @@ from typing import TypeAlias, overload
 
 import numpy as np
 import numpy.typing as npt
+
 from lostwork import REFERENCE_TEMPERATURE
 
 __all__ = ["ConstantHeatCapacity", "exponential", "logarithm"]

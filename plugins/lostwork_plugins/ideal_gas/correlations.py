@@ -1,7 +1,11 @@
 """Published correlations of the heat capacity of one gas, each with the range it was made for.
 
 The coefficients are those that `chemicals` carries; the equations are evaluated here on arrays.
-Every correlation gives cp / R, and none is ever evaluated outside its range.
+Every correlation gives cp / R; the model refuses what lies outside its range.
+
+How far they can be trusted: against the ideal part of the reference equations of CoolProp 8.0, from
+250 K to 450 K, the greatest departure of cp has a median of 0.4 % (TRC, 89 fluids), 0.6 % (Poling,
+81) and 0.2 % (Shomate, 30); for one fluid in ten it is above 1.7 %, 2.2 % and 0.8 %.
 """
 
 from __future__ import annotations
@@ -13,6 +17,7 @@ from typing import Protocol, TypeAlias
 
 import numpy as np
 import numpy.typing as npt
+
 from lostwork import REFERENCE_TEMPERATURE, Component, R
 
 __all__ = ["CORRELATIONS", "Correlation", "Monatomic", "Poling", "Shomate", "Trc", "correlation_of"]
@@ -56,6 +61,8 @@ class Correlation(Protocol):
 
     def cp_over_R(self, T: Vector) -> Vector:
         """Give cp / R at T (K), for T inside the range."""
+
+    def __hash__(self) -> int: ...
 
 
 @dataclass(frozen=True)

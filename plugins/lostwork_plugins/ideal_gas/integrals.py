@@ -19,8 +19,8 @@ from typing import TypeAlias
 
 import numpy as np
 import numpy.typing as npt
-from lostwork import REFERENCE_TEMPERATURE, R
 
+from lostwork import REFERENCE_TEMPERATURE, R
 from lostwork_plugins.ideal_gas.correlations import Correlation
 
 __all__ = ["TabulatedHeatCapacity"]
@@ -64,12 +64,9 @@ class TabulatedHeatCapacity:
         self._s, self._s_edges = _integrate(values / (T_left[:, None] + _NODES))
         origin = min(max(REFERENCE_TEMPERATURE, T_min), T_max)
         h_origin, s_origin = self.at_T(origin)
-        for coefficients, edges, value in (
-            (self._h, self._h_edges, h_origin),
-            (self._s, self._s_edges, s_origin),
-        ):
-            edges -= value
-            coefficients[0] = edges[:-1]
+        self._h_edges -= h_origin
+        self._s_edges -= s_origin
+        self._h[0], self._s[0] = self._h_edges[:-1], self._s_edges[:-1]
         edges = np.append(T_left, float(high))
         self._u_edges = self._h_edges - self.gas_constant * edges
         self._w_edges = self._s_edges - self.gas_constant * np.log(edges)
@@ -89,11 +86,11 @@ class TabulatedHeatCapacity:
         Outside it an array has meaningless rows, which the model marks as failed.
         """
         if isinstance(T, np.ndarray):
-            t = T - self._low
-            cells = t.astype(np.intp)
+            offsets = T - self._low
+            cells = offsets.astype(np.intp)
             np.clip(cells, 0, self._last, out=cells)
-            t -= cells
-            return _horner(self._h, cells, t), _horner(self._s, cells, t)
+            offsets -= cells
+            return _horner(self._h, cells, offsets), _horner(self._s, cells, offsets)
         offset = T - self._low
         cell = min(int(offset), self._last)
         t = offset - cell
@@ -131,7 +128,7 @@ class TabulatedHeatCapacity:
         if isinstance(target, np.ndarray):
             cells = np.searchsorted(edges, target, side="right") - 1
             np.clip(cells, 0, self._last, out=cells)
-            return self._newton(target, c[:, cells], edges, cells, linear, log)
+            return self._newton(target, c.take(cells, axis=1), edges, cells, linear, log)
         cell = min(max(int(edges.searchsorted(target, side="right")) - 1, 0), self._last)
         _, c1, c2, c3, c4, c5, c6 = c[:, cell].tolist()
         left, right = edges[cell : cell + 2].tolist()
@@ -145,7 +142,7 @@ class TabulatedHeatCapacity:
                 f -= log * math.log1p(t / T_left)
                 slope -= log / (T_left + t)
             t = min(max(t - (f - rest) / (slope - linear), -0.01), 1.01)
-        return T_left + t
+        return float(T_left + t)
 
     def _newton(
         self, target: Vector, c: Vector, edges: Vector, cells: Cells, linear: float, log: float
@@ -175,7 +172,7 @@ class TabulatedHeatCapacity:
 
 
 def _horner(coefficients: Vector, cells: Cells, t: Vector) -> Vector:
-    total = coefficients[_POINTS].take(cells)
+    total: Vector = coefficients[_POINTS].take(cells)
     picked = np.empty_like(total)
     for row in coefficients[_POINTS - 1 :: -1]:
         total *= t

@@ -14,6 +14,7 @@ from typing import Any, Protocol, TypeAlias
 
 import numpy as np
 import numpy.typing as npt
+
 from lostwork import (
     DETERMINING_PAIRS,
     REFERENCE_PRESSURE,
@@ -25,9 +26,7 @@ from lostwork import (
     Pair,
     PairRefused,
     PropertyModel,
-    R,
 )
-
 from lostwork_plugins.ideal_gas.constant import exponential, logarithm
 
 __all__ = ["IdealGasModel", "Recipe", "TemperatureRange"]
@@ -165,11 +164,8 @@ class IdealGasModel(PropertyModel):
         if not limits.p_min <= p <= limits.p_max:
             return self._no_state(pair, x, y, float(T), float(p))
         s += self._s0 - self._R * math.log(p)
-        columns = {"T": T, "p": p, "v": self._R * T / p, "h": h, "s": s}
-        for name, given in zip(pair, (x, y), strict=True):
-            if name != "u":
-                columns[name] = given
-        return Columns(**columns, quality=math.nan)
+        state = {"T": T, "p": p, "v": self._R * T / p, "h": h, "s": s, pair[0]: x, pair[1]: y}
+        return Columns(state["T"], state["p"], state["v"], state["h"], state["s"], math.nan)
 
     def _no_state(self, pair: Pair, x: float, y: float, T: float, p: float) -> Columns:
         nan = math.nan
@@ -182,7 +178,7 @@ class IdealGasModel(PropertyModel):
             T = np.asarray(_snapped(T, limits))
         h, s = self._cp.at_T(T)
         p = np.asarray(self._pressure(pair, x, y, T, s))
-        good = (T >= limits.T_min) & (T <= limits.T_max)
+        good = (limits.T_min <= T) & (limits.T_max >= T)
         good &= (p >= limits.p_min) & (p <= limits.p_max)
         log_p = np.log(p)
         log_p *= -self._R
@@ -190,20 +186,17 @@ class IdealGasModel(PropertyModel):
         s += log_p
         v = self._R * T
         v /= p
-        columns = {"T": T, "p": p, "v": v, "h": h, "s": s, "quality": np.full(x.shape, np.nan)}
-        for name, given in zip(pair, (x, y), strict=True):
-            if name != "u":
-                columns[name] = given.copy()
+        state = {"T": T, "p": p, "v": v, "h": h, "s": s, pair[0]: x.copy(), pair[1]: y.copy()}
+        columns = [state[name] for name in ("T", "p", "v", "h", "s")]
         failed = {}
         if not good.all():
-            bad = np.flatnonzero(~good)
-            for row in bad:
-                given_x, given_y = float(x[row]), float(y[row])
-                failed[int(row)] = self._reason(
-                    pair, given_x, given_y, float(T[row]), float(p[row])
-                )
-            columns = {name: np.where(good, column, np.nan) for name, column in columns.items()}
-        return Columns(**columns, failed=MappingProxyType(failed))
+            failed = {
+                int(row): self._reason(pair, *(float(value[row]) for value in (x, y, T, p)))
+                for row in np.flatnonzero(~good)
+            }
+            columns = [np.where(good, column, np.nan) for column in columns]
+        T, p, v, h, s = columns
+        return Columns(T, p, v, h, s, np.full(x.shape, np.nan), MappingProxyType(failed))
 
     def _temperature(self, pair: Pair, x: Column, y: Column) -> Column:
         """Invert the one function of T that the pair fixes."""
@@ -226,7 +219,7 @@ class IdealGasModel(PropertyModel):
 
     def _pressure(self, pair: Pair, x: Column, y: Column, T: Column, s: Column) -> Column:
         """Pressure from the pair, T and the entropy `s` at the reference pressure."""
-        first, second = pair
+        first, _ = pair
         if "p" in pair:
             return x if first == "p" else y
         if "v" in pair:
@@ -249,19 +242,20 @@ class IdealGasModel(PropertyModel):
         ends = self._range
         if not ends.T_min <= T <= ends.T_max:
             needs = f"T = {T:.8g} K is" if "T" in pair else f"{given} needs a temperature"
-            if T < ends.T_min:
+            if ends.T_min > T:
                 return f"{needs} below {ends.T_min:g} K, where {ends.below} begins"
             return f"{needs} above {ends.T_max:g} K, where {ends.above} ends"
         low, high = self.limits.p_min, self.limits.p_max
-        return f"{given} gives p = {p:.8g} Pa, outside the {low:g} Pa to {high:g} Pa of this model"
+        subject = f"p = {p:.8g} Pa is" if "p" in pair else f"{given} gives p = {p:.8g} Pa,"
+        return f"{subject} outside the {low:g} Pa to {high:g} Pa of this model"
 
 
 def _snapped(T: Column, limits: Limits) -> Column:
     """Put a temperature that misses the end of the range by its rounding on that end."""
     low, high = limits.T_min, limits.T_max
     if isinstance(T, np.ndarray):
-        T = np.where((T < low) & (T > low * (1.0 - _ROUND_OFF)), low, T)
-        return np.where((T > high) & (T < high * (1.0 + _ROUND_OFF)), high, T)
+        T = np.where((low > T) & (low * (1.0 - _ROUND_OFF) < T), low, T)
+        return np.where((high < T) & (high * (1.0 + _ROUND_OFF) > T), high, T)
     if low * (1.0 - _ROUND_OFF) < T < low:
         return low
     return high if high < T < high * (1.0 + _ROUND_OFF) else T

@@ -17,7 +17,6 @@ from lostwork import (
     to_si,
     to_si_any,
 )
-
 from lostwork_plugins.ideal_gas.correlations import CORRELATIONS
 from lostwork_plugins.ideal_gas.refusal import NoIdealGasModel
 
