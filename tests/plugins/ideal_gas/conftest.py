@@ -37,7 +37,7 @@ def _spec(composition: str | Mapping[str, float], name: str | None = None) -> lw
     for gas in composition:
         cas, formula, molar_mass = _GASES[gas]
         components.append(
-            lw.Component(cas=cas, name=gas, formula=formula, molar_mass=molar_mass, elements={})
+            lw.Component(cas=cas, name=gas, formula=formula, molar_mass=molar_mass, elements=())
         )
     return lw.FluidSpec(tuple(components), tuple(composition.values()), name)
 
