@@ -2,12 +2,26 @@
 
 from __future__ import annotations
 
-from typing import Any, ClassVar
+from dataclasses import dataclass
+from typing import Annotated, Any, ClassVar
+
+from pydantic import GetCoreSchemaHandler
+from pydantic_core import CoreSchema, core_schema
 
 import lostwork as lw
 from lostwork_plugins.flow.step import FlowStep
 
 __all__ = ["AsMeasured"]
+
+
+@dataclass(frozen=True)
+class _AsItIs:
+    """Takes an instance as it is; Heat and Work are dataclasses, which pydantic would rebuild."""
+
+    def __get_pydantic_core_schema__(
+        self, source: type[Any], handler: GetCoreSchemaHandler
+    ) -> CoreSchema:
+        return core_schema.is_instance_schema(source)
 
 
 class AsMeasured(FlowStep):
@@ -29,9 +43,9 @@ class AsMeasured(FlowStep):
     """Streams that enter."""
     outflows: dict[str, lw.Stream]
     """Streams that leave, by the name of the outlet."""
-    heat: tuple[lw.Heat, ...] = ()
+    heat: tuple[Annotated[lw.Heat, _AsItIs()], ...] = ()
     """Heat, positive into the step, each with its boundary temperature."""
-    work: tuple[lw.Work, ...] = ()
+    work: tuple[Annotated[lw.Work, _AsItIs()], ...] = ()
     """Work, positive into the step."""
     closing: lw.Fraction | None = None
     """Error of the instruments, as a fraction within which flows and energies count as closed."""

@@ -39,7 +39,7 @@ class Driven(Machine):
         gain = exergy_gain(self.inflow(self.inlet), self.outlet, balance.surroundings.si.T)
         return measured_where(
             gain > 0.0,
-            expended=self.solution.work[0].si,
+            expended=self.work_in,
             recovered=gain,
             expended_name="shaft work",
             recovered_name="exergy gained by the stream",

@@ -59,7 +59,7 @@ class Expansion(Machine):
         return measured_where(
             given > 0.0,
             expended=given,
-            recovered=-np.asarray(self.solution.work[0].si),
+            recovered=-np.asarray(self.work_in),
             expended_name="exergy given up by the stream",
             recovered_name="shaft work",
         )

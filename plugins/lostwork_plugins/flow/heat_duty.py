@@ -103,7 +103,7 @@ class _HeatDuty(FlowStep):
         gain = exergy_gain(self.inflow(self.inlet), self.outlet, T0)
         heat = self.solution.heat[0]
         to_reservoir = -np.asarray(heat.si) * (1.0 - T0 / np.asarray(heat.T))
-        return one_gives_one_gains(to_reservoir, gain, "heat of the reservoir", "stream")
+        return one_gives_one_gains(to_reservoir, gain, "reservoir", "stream")
 
 
 class Heating(_HeatDuty):
@@ -167,7 +167,7 @@ class Heating(_HeatDuty):
             rises = np.asarray(gain) > 0.0
         return measured_where(
             rises,
-            expended=self.solution.work[0].si,
+            expended=self.work_in,
             recovered=gain,
             expended_name="electricity",
             recovered_name="exergy gained by the stream",

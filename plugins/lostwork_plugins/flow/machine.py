@@ -131,8 +131,7 @@ class Machine(FlowStep):
     @property
     def shaft_power(self) -> pint.Quantity[Any]:
         """Power at the shaft, positive whichever way it goes, W (or J)."""
-        feed = self._ends.feed
-        return lw.quantity(self.sense * self.solution.work[0].si, "W" if feed.per_time else "J")
+        return lw.quantity(self.sense * self.work_in, "W" if self._ends.feed.per_time else "J")
 
     @property
     def isentropic_efficiency_reached(self) -> pint.Quantity[Any]:

@@ -90,7 +90,7 @@ class Mixing(FlowStep):
         Streams of different composition have no common measure, and no purpose.
         """
         feeds = [self.inflow(stream) for stream in self.inflows]
-        if any(feed.fluid != self.outlet.state.fluid for feed in feeds):
+        if any(feed.fluid != feeds[0].fluid for feed in feeds):
             return None
         T0 = balance.surroundings.si.T
         gains = [np.asarray(exergy_gain(feed, self.outlet, T0)) for feed in feeds]

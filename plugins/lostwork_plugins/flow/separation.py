@@ -95,8 +95,8 @@ class FlashSeparation(FlowStep):
             refuse_uphill_heat(refusals, whole.si.T, heat_in, self.si.at)
             whole = refusals.mark(whole)
         phases = self._pure(refusals, whole) if feed.fluid.is_pure else self._mixture(whole)
-        vapour, liquid = feed.mass * phases.share, feed.mass * (1.0 - np.asarray(phases.share))
-        liquid = point_or_array(liquid)
+        vapour = feed.mass * phases.share
+        liquid = feed.mass * (1.0 - phases.share)
         outlets = {
             "vapour": self.stream("vapour", phases.vapour, feed, mass=vapour),
             "liquid": self.stream("liquid", phases.liquid, feed, mass=liquid),
@@ -184,20 +184,36 @@ class FlashSeparation(FlowStep):
                 )
             return _Phases(whole, whole, 0.0 if whole.phase in _LIQUID else 1.0)
         split = fluid.split(T, p)
-        vapour, liquid = (
-            self._saturated(fluid.with_composition(composition), quality, T, p)
-            for composition, quality in ((split.vapour, 1.0), (split.liquid, 0.0))
-        )
-        molar_mass = vapour.fluid.molar_mass_si / fluid.molar_mass_si
-        return _Phases(vapour, liquid, split.vapour_fraction * molar_mass)
+        beta = split.vapour_fraction
+        # The smaller phase is what the larger one leaves of the whole, so that the components
+        # close to round-off whatever the accuracy of the flash.
+        if beta < 0.5:
+            liquid_x = split.liquid
+            vapour_x = _left_over(fluid.spec.mole_fractions, liquid_x, 1.0 - beta)
+        else:
+            vapour_x = split.vapour
+            liquid_x = _left_over(fluid.spec.mole_fractions, vapour_x, beta)
+        vapour = self._saturated(fluid.with_composition(vapour_x), 1.0, T, p)
+        liquid = self._saturated(fluid.with_composition(liquid_x), 0.0, T, p)
+        # Mass fractions by the molar masses of the components, as a balance counts them.
+        lightness = vapour.fluid.spec.molar_mass / fluid.spec.molar_mass
+        return _Phases(vapour, liquid, beta * lightness)
 
     def _saturated(self, fluid: lw.Fluid, quality: float, T: float, p: float) -> lw.State:
         """Give one phase, which is saturated by its making."""
         state = fluid.state_si(("p", "quality"), p, quality)
-        if abs(state.si.T - T) > _SAME_TEMPERATURE * T:
+        if abs(float(state.si.T) - T) > _SAME_TEMPERATURE * T:
             raise lw.ProcessError(
                 process=self.label,
                 reason=f"the phases found at {T:.8g} K are saturated at {state.si.T:.8g} K by the "
                 f"same backend ({fluid.backend}); it does not part this mixture consistently here",
             )
         return state
+
+
+def _left_over(
+    whole: tuple[float, ...], phase: tuple[float, ...], fraction: float
+) -> tuple[float, ...]:
+    """Composition, by amount, of what is left of `whole` when `phase` has gone."""
+    rest = (z - fraction * x for z, x in zip(whole, phase, strict=True))
+    return tuple(max(amount, 0.0) / (1.0 - fraction) for amount in rest)

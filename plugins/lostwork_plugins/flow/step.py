@@ -84,6 +84,11 @@ class FlowStep(lw.Process):
         return {name for name, value in values.items() if value is not None and value is not False}
 
     @property
+    def work_in(self) -> lw.Column:
+        """All work that the step takes, W (or J); negative where it gives work."""
+        return sum(work.si for work in self.solution.work if work.si is not None)
+
+    @property
     def refusals(self) -> Refusals:
         """A fresh list of what this step refuses."""
         return Refusals(self.label)

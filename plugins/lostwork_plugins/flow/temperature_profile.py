@@ -93,7 +93,7 @@ def least_difference(
         passed = 1.0 - share if arrangement == "counter" else share
         warm = hot.reached(refusals, duty, share).si.T
         cool = cold.reached(refusals, duty, passed).si.T
-        return np.asarray(warm) - np.asarray(cool)
+        return np.asarray(np.asarray(warm) - np.asarray(cool), dtype=np.float64)
 
     low, high, points = np.zeros(shape), np.ones(shape), _POINTS
     least = np.full(shape, np.inf)
