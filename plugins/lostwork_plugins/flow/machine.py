@@ -31,12 +31,14 @@ import numpy as np
 import pint
 
 import lostwork as lw
-from lostwork_plugins.flow.bracketing import bracketed_root
 from lostwork_plugins.flow.rows import Refusals, point_or_array
 from lostwork_plugins.flow.step import Alternatives, FlowStep, Inflow
 from lostwork_plugins.flow.turbomachine import isentropic_enthalpy, polytropic_entropy
 
 __all__ = ["Machine"]
+
+_MOST_CORRECTIONS = 30
+_STANDSTILL = 1e-11
 
 
 @dataclass(frozen=True)
@@ -143,17 +145,23 @@ class Machine(FlowStep):
 
     @property
     def polytropic_efficiency_reached(self) -> pint.Quantity[Any]:
-        """Polytropic efficiency that the ends amount to; NaN where none between 0 and 2 does."""
-        ends, refusals = self._ends, self.refusals
-        aim = np.asarray(ends.adiabatic.si.s)
-        shape = np.broadcast_shapes(aim.shape, np.shape(ends.p_out), np.shape(ends.feed.s))
-
-        def residual(efficiency: Any) -> Any:
-            factor = self._stage_factor(efficiency)
-            return np.asarray(polytropic_entropy(refusals, ends.feed, ends.p_out, factor)) - aim
-
-        low, high = np.full(shape, 0.2), np.full(shape, 2.0)
-        return lw.quantity(point_or_array(bracketed_root(residual, low, high)), "")
+        """Polytropic efficiency that the ends amount to; NaN where the pressure does not change."""
+        ends, feed = self._ends, self._ends.feed
+        first, last = feed.state.si, ends.adiabatic.si
+        rise = np.asarray(last.s - first.s)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            mean = 0.5 * (first.p * first.v / first.T + last.p * last.v / last.T)
+            factor = rise / (mean * np.log(np.asarray(ends.p_out) / feed.p))
+            for _ in range(_MOST_CORRECTIONS):
+                # The entropy rises in proportion to the factor, but for the path it changes.
+                end = polytropic_entropy(self.refusals, feed, ends.p_out, point_or_array(factor))
+                made = np.asarray(end) - feed.s
+                correction = np.where(made == 0.0, 1.0, rise / made)
+                factor = factor * correction
+                if not np.any(np.abs(correction - 1.0) > _STANDSTILL):
+                    break
+        efficiency = 1.0 / (1.0 + factor) if self.sense > 0.0 else 1.0 + factor
+        return lw.quantity(point_or_array(efficiency), "")
 
     def _stage_factor(self, efficiency: lw.Column) -> lw.Column:
         return 1.0 / efficiency - 1.0 if self.sense > 0.0 else efficiency - 1.0
