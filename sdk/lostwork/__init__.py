@@ -14,7 +14,6 @@ if TYPE_CHECKING:
     from lostwork.accounting.audit import (
         Audit,
         Finding,
-        Link,
         Ranked,
     )
     from lostwork.accounting.balance import (
@@ -39,6 +38,10 @@ if TYPE_CHECKING:
         GRAVITY,
         Content,
         Stream,
+    )
+    from lostwork.accounting.joints import (
+        Joints,
+        Link,
     )
     from lostwork.accounting.losses import (
         MECHANISMS,
@@ -238,6 +241,7 @@ __all__ = [
     "Heat",
     "IllPosed",
     "InternalDisagreement",
+    "Joints",
     "Length",
     "Limits",
     "Link",
@@ -315,7 +319,6 @@ _HOMES = {
     "lostwork.accounting.audit": (
         "Audit",
         "Finding",
-        "Link",
         "Ranked",
     ),
     "lostwork.accounting.balance": ("Balance",),
@@ -338,6 +341,10 @@ _HOMES = {
         "GRAVITY",
         "Content",
         "Stream",
+    ),
+    "lostwork.accounting.joints": (
+        "Joints",
+        "Link",
     ),
     "lostwork.accounting.losses": (
         "MECHANISMS",

@@ -12,29 +12,19 @@ import numpy as np
 import pint
 
 from lostwork.accounting.balance import Balance
-from lostwork.accounting.flows import Content, Stream
+from lostwork.accounting.entries import summed
+from lostwork.accounting.joints import Link, match
 from lostwork.accounting.verdict import Status, Verdict
 from lostwork.errors import AuditError, DatumMismatch, InternalDisagreement
 from lostwork.plugins import plugins
 from lostwork.properties.backend import Column
-from lostwork.quantities import quantity
+from lostwork.quantities import FRACTION, quantity, to_si
 
-__all__ = ["Audit", "Finding", "Link", "Ranked"]
+__all__ = ["Audit", "Finding", "Ranked"]
 
 Quantity: TypeAlias = "pint.Quantity[Any]"
 
-_SAME = 1e-6
-
-
-@dataclass(frozen=True)
-class Link:
-    """A stream or a content that leaves one step and enters another."""
-
-    name: str
-    leaves: str
-    enters: str
-    mismatch: str
-    """What differs between the two ends; empty where they agree."""
+_AGREEMENT = 1e-6
 
 
 @dataclass(frozen=True)
@@ -70,6 +60,9 @@ class Audit:
     ----------
     balances
         One per step, names all different.
+    agreement
+        Fraction within which the two ends of a shared stream must agree; state it where a stream
+        is both measured and computed ("1 %").
     checks
         Whether the checks of installed plugins are run.
     remarks
@@ -86,6 +79,7 @@ class Audit:
         self,
         balances: Iterable[Balance],
         *,
+        agreement: Any = None,
         checks: bool = True,
         remarks: Iterable[Finding] = (),
     ) -> None:
@@ -93,11 +87,11 @@ class Audit:
         self._require_one_frame()
         self.surroundings = self.balances[0].surroundings
         self.per_time = self.balances[0].per_time
-        streams = _joints([(b.name, b.inflows, b.outflows) for b in self.balances], "stream")
-        contents = _joints([(b.name, b.before, b.after) for b in self.balances], "content")
-        self._open_streams, stream_links = streams
-        self._open_contents, content_links = contents
-        self.links: tuple[Link, ...] = (*stream_links, *content_links)
+        within = _AGREEMENT if agreement is None else float(to_si(agreement, FRACTION, "agreement"))
+        self._agreement = within
+        self._streams = match([(b.name, b.inflows, b.outflows) for b in self.balances], within)
+        self._contents = match([(b.name, b.before, b.after) for b in self.balances], within)
+        self.links: tuple[Link, ...] = (*self._streams.links, *self._contents.links)
         found = _run_checks(self.balances) if checks else ()
         self.findings: tuple[Finding, ...] = (*remarks, *found)
 
@@ -114,19 +108,17 @@ class Audit:
             Every shared stream agrees at both ends, and the whole still generates another entropy
             than its parts together.
         """
-        inflows, outflows = self._open_streams
-        before, after = self._open_contents
         try:
             whole = Balance(
                 name="whole",
                 surroundings=self.surroundings,
-                inflows=inflows,
-                outflows=outflows,
+                inflows=self._streams.entering,
+                outflows=self._streams.leaving,
                 heat=[q for b in self.balances for q in b.heat],
                 work=[w for b in self.balances for w in b.work],
-                before=before,
-                after=after,
-                closing=max(b.closing for b in self.balances),
+                before=self._contents.entering,
+                after=self._contents.leaving,
+                closing=max(*(b.closing for b in self.balances), self._agreement),
             )
         except DatumMismatch:
             return None
@@ -165,7 +157,7 @@ class Audit:
 
     @property
     def status(self) -> Status:
-        """The gravest status of any step; a shared stream that differs at its ends is unbalanced."""
+        """The gravest status of any step; ends of a stream that differ count as unbalanced."""
         statuses = {balance.verdict.status for balance in self.balances}
         if any(link.mismatch for link in self.links):
             statuses.add(Status.unbalanced)
@@ -234,7 +226,7 @@ class Audit:
         if any(link.mismatch for link in self.links):
             return
         apart = np.abs(whole.books.sigma - self._sigma)
-        band = whole.books.noise + whole.books.hidden
+        band = whole.books.noise + whole.books.hidden + summed(link.hidden for link in self.links)
         for balance in self.balances:
             band = band + balance.books.noise + balance.books.hidden
         with np.errstate(invalid="ignore"):
@@ -244,69 +236,6 @@ class Audit:
                     first=f"the parts give {self._sigma}",
                     second=f"the balance around them {whole.books.sigma}",
                 )
-
-
-_Side: TypeAlias = Sequence[Any]
-
-
-def _joints(
-    steps: list[tuple[str, _Side, _Side]], word: str
-) -> tuple[tuple[list[Any], list[Any]], list[Link]]:
-    """Match what leaves one step with what enters another; give what stays open, and the links."""
-    entering = _by_key([(name, item) for name, ins, _ in steps for item in ins], word, "enters")
-    leaving = _by_key([(name, item) for name, _, outs in steps for item in outs], word, "leaves")
-    links = [
-        Link(
-            name=item.name or item.state.label,
-            leaves=leaving[key][0],
-            enters=step,
-            mismatch=_mismatch(leaving[key][1], item),
-        )
-        for key, (step, item) in entering.items()
-        if key in leaving
-    ]
-    open_in = [item for key, (_, item) in entering.items() if key not in leaving]
-    open_out = [item for key, (_, item) in leaving.items() if key not in entering]
-    return (open_in, open_out), links
-
-
-def _by_key(
-    items: list[tuple[str, Stream | Content]], word: str, verb: str
-) -> dict[object, tuple[str, Stream | Content]]:
-    found: dict[object, tuple[str, Stream | Content]] = {}
-    for step, item in items:
-        key: object = item.name or id(item)
-        if key in found:
-            name = item.name or item.state.label
-            raise AuditError(
-                reason=f"{word} {name!r} {verb} both {found[key][0]!r} and {step!r}; divide it "
-                "with a splitting step, or give each part a name of its own"
-            )
-        found[key] = (step, item)
-    return found
-
-
-def _mismatch(leaves: Any, enters: Any) -> str:
-    """Say what differs between the two ends of a link."""
-    if leaves is enters:
-        return ""
-    differences = [
-        f"{name} is {_shown(a)} where it leaves and {_shown(b)} where it enters"
-        for name, a, b in (
-            ("mass", leaves.mass_si, enters.mass_si),
-            ("h", leaves.state.si.h, enters.state.si.h),
-            ("s", leaves.state.si.s, enters.state.si.s),
-        )
-        if not np.allclose(a, b, rtol=_SAME, atol=0.0, equal_nan=True)
-    ]
-    if leaves.state.datum != enters.state.datum:
-        differences.append(f"datums {leaves.state.datum} and {enters.state.datum}")
-    return "; ".join(differences)
-
-
-def _shown(value: Column) -> str:
-    array = np.asarray(value)
-    return f"{float(array):.6g}" if not array.shape else f"an array {array.shape}"
 
 
 def _run_checks(balances: Sequence[Balance]) -> tuple[Finding, ...]:

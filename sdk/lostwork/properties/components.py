@@ -156,9 +156,9 @@ def _well_known() -> Any:
         identifiers.PUBCHEM_EXAMPLE_DB_NAME,
         identifiers.PUBCHEM_IONORGANIC_DB_NAME,
     )
-    return identifiers.ChemicalMetadataDB(
-        main_db="", user_dbs=[str(folder / file) for file in files]
-    )
+    # The library carries no types.
+    read: Any = identifiers.ChemicalMetadataDB
+    return read(main_db="", user_dbs=[str(folder / file) for file in files])
 
 
 def _of_entry(entry: Any) -> Component:
