@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import io
+import textwrap
 from collections.abc import Iterable
+from typing import Any
 
 import numpy as np
 from rich.console import Console, RenderableType
@@ -28,6 +30,11 @@ _UNBOUNDED = 100_000
 _NARROWEST = 60
 _GRAVE = (lw.Status.impossible, lw.Status.unbalanced)
 _ROWS_SHOWN = 6
+_HANGING: dict[str, Any] = {
+    "initial_indent": "  ",
+    "subsequent_indent": "    ",
+    "break_long_words": False,
+}
 
 
 def table(subject: lw.Audit | lw.Comparison, presentation: lw.Presentation) -> str:
@@ -149,17 +156,18 @@ def _by_mechanism(audit: lw.Audit, scale: Scale) -> list[RenderableType]:
     return [grid]
 
 
-def _remarks(findings: tuple[lw.Finding, ...]) -> list[RenderableType]:
+def _remarks(findings: tuple[lw.Finding, ...]) -> list[Text]:
     if not findings:
         return []
     lines = [paragraph("Remarks", style="bold", above=True)]
     for finding in findings:
         place = ", ".join(part for part in (finding.step, finding.check) if part)
-        lines.append(paragraph(f"  {place}: {finding.text}"))
+        # Remarks are prose: wrapped in a file too, where the tables are as wide as they need.
+        lines.append(paragraph(textwrap.fill(f"{place}: {finding.text}", 96, **_HANGING)))
     return lines
 
 
-def _judgement(audit: lw.Audit) -> list[RenderableType]:
+def _judgement(audit: lw.Audit) -> list[Text]:
     """Close with what cannot be: the last lines are what a reader sees first in a terminal."""
     unfit = [balance for balance in audit.balances if not balance.verdict.acceptable]
     apart = [link for link in audit.links if link.mismatch]
@@ -189,4 +197,4 @@ def _judgement(audit: lw.Audit) -> list[RenderableType]:
     else:
         lines.append(paragraph(f"{steps} can run as described.", "bold"))
     lines[0].plain = "\n" + lines[0].plain
-    return list(lines)
+    return lines

@@ -39,6 +39,9 @@ class Case:
     """The path, or the name given, for messages."""
     surroundings: Surroundings
     """T0 and p0."""
+    _layout: Layout
+    _wiring: Wiring
+    _backend: str | None
 
     def __init__(
         self,
@@ -104,14 +107,12 @@ class Case:
     @property
     def title(self) -> str:
         """Title, or the name of the file."""
-        title: str = self._layout.case.title
-        return title or Path(self.file).stem
+        return self._layout.case.title or Path(self.file).stem
 
     @property
     def note(self) -> str:
         """What the author wants the reader to know."""
-        note: str = self._layout.case.note
-        return note
+        return self._layout.case.note
 
     @property
     def fluids(self) -> Mapping[str, Fluid]:

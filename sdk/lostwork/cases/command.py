@@ -11,6 +11,7 @@ import os
 import sys
 import traceback
 from collections.abc import Sequence
+from typing import TextIO
 
 from lostwork import __version__
 from lostwork.cases.exit_codes import DEFECT, INTERRUPTED, WRONG
@@ -134,8 +135,7 @@ def _print(text: str) -> None:
     _write(text if text.endswith("\n") else f"{text}\n", sys.stdout)
 
 
-def _write(text: str, to: object) -> None:
-    stream = sys.stdout if to is sys.stdout else sys.stderr
+def _write(text: str, stream: TextIO) -> None:
     encoding = stream.encoding or "utf-8"
     try:
         stream.write(text.encode(encoding, errors="replace").decode(encoding))
