@@ -30,6 +30,7 @@ _UNBOUNDED = 100_000
 _NARROWEST = 60
 _GRAVE = (lw.Status.impossible, lw.Status.unbalanced)
 _ROWS_SHOWN = 6
+_PROSE = 96
 _HANGING: dict[str, Any] = {
     "initial_indent": "  ",
     "subsequent_indent": "    ",
@@ -40,12 +41,14 @@ _HANGING: dict[str, Any] = {
 def table(subject: lw.Audit | lw.Comparison, presentation: lw.Presentation) -> str:
     """Write an audit, or a comparison, as tables for people."""
     parts = (
-        comparison_parts(subject) if isinstance(subject, lw.Comparison) else audit_parts(subject)
+        comparison_parts(subject)
+        if isinstance(subject, lw.Comparison)
+        else audit_parts(subject, presentation.width)
     )
     return _written([*heading(presentation), *parts], presentation)
 
 
-def audit_parts(audit: lw.Audit) -> list[RenderableType]:
+def audit_parts(audit: lw.Audit, width: int | None) -> list[RenderableType]:
     """Give the parts of a report on an audit, in the order of reading."""
     ranking = audit.ranking()
     scale = Scale.of([ranked.work_lost for ranked in ranking], audit.per_time)
@@ -53,7 +56,7 @@ def audit_parts(audit: lw.Audit) -> list[RenderableType]:
         _frame(audit),
         *_ranked(audit, ranking, scale),
         *_by_mechanism(audit, scale),
-        *_remarks(audit.findings),
+        *_remarks(audit.findings, width),
         *whole_parts(audit),
         *_judgement(audit),
     ]
@@ -119,7 +122,7 @@ def _ranked(audit: lw.Audit, ranking: tuple[lw.Ranked, ...], scale: Scale) -> li
             lw.percent(ranked.share),
             lw.percent(ranked.efficiency),
             _verdict(ranked.verdict),
-            Text(ranked.mechanism),
+            Text("-" if status is lw.Status.reversible else ranked.mechanism),
             style=grave(status),
         )
     total = mean(audit.work_lost_si)
@@ -141,6 +144,10 @@ def _verdict(verdict: lw.Verdict) -> str:
     return f"{word} (rows {shown}{more})"
 
 
+def _differ(count: int) -> str:
+    return "1 shared stream differs" if count == 1 else f"{count} shared streams differ"
+
+
 def _by_mechanism(audit: lw.Audit, scale: Scale) -> list[RenderableType]:
     grid = columns(
         "Work lost, by mechanism",
@@ -156,14 +163,15 @@ def _by_mechanism(audit: lw.Audit, scale: Scale) -> list[RenderableType]:
     return [grid]
 
 
-def _remarks(findings: tuple[lw.Finding, ...]) -> list[Text]:
+def _remarks(findings: tuple[lw.Finding, ...], width: int | None) -> list[Text]:
     if not findings:
         return []
+    # Prose is wrapped in a file too, where the tables are as wide as they need.
+    folded = min(_PROSE, max(width or _PROSE, _NARROWEST))
     lines = [paragraph("Remarks", style="bold", above=True)]
     for finding in findings:
         place = ", ".join(part for part in (finding.step, finding.check) if part)
-        # Remarks are prose: wrapped in a file too, where the tables are as wide as they need.
-        lines.append(paragraph(textwrap.fill(f"{place}: {finding.text}", 96, **_HANGING)))
+        lines.append(paragraph(textwrap.fill(f"{place}: {finding.text}", folded, **_HANGING)))
     return lines
 
 
@@ -188,7 +196,7 @@ def _judgement(audit: lw.Audit) -> list[Text]:
     steps = "The one step" if count == 1 else f"The {count} steps"
     if unfit or apart:
         closing = f"!! {len(unfit)} of {count} steps cannot stand as described"
-        closing += f", {len(apart)} shared streams differ." if apart else "."
+        closing += f"; {_differ(len(apart))}." if apart else "."
         lines.append(paragraph(closing, "bold red"))
     elif undecided:
         lines.append(

@@ -26,15 +26,10 @@ def whole_parts(audit: lw.Audit) -> list[RenderableType]:
     residual = mean(whole.books.energy_residual)
     parts, around = mean(audit.work_lost_si), mean(whole.work_lost_si)
     scale = Scale.of([work, heat, parts, around], audit.per_time)
-    mass_unit = "kg/s" if audit.per_time else "kg"
-    mass = [
-        sum(mean(stream.mass_si) for stream in streams)
-        for streams in (whole.inflows, whole.outflows)
-    ]
     grid = columns("Balance around the whole", ("", "name"), ("", "right"), ("", "word"))
     grid.show_header = False
-    grid.add_row("mass in", lw.figure(mass[0]), mass_unit)
-    grid.add_row("mass out", lw.figure(mass[1]), mass_unit)
+    for name, mass in _masses(whole):
+        grid.add_row(name, lw.figure(mass), "kg/s" if audit.per_time else "kg")
     grid.add_row("work put in, net", scale.figure(work), scale.unit)
     grid.add_row("heat put in, net", scale.figure(heat), scale.unit)
     grid.add_row("energy that does not close", scale.figure(residual), scale.unit)
@@ -42,3 +37,14 @@ def whole_parts(audit: lw.Audit) -> list[RenderableType]:
     grid.add_row("work lost, around the whole", scale.figure(around), scale.unit)
     grid.add_row("streams shared between steps", str(shared), "")
     return [grid]
+
+
+def _masses(whole: lw.Balance) -> list[tuple[str, float]]:
+    """Masses that pass the boundary, and those that stand inside before and after."""
+    sides = (
+        ("mass in", whole.inflows),
+        ("mass out", whole.outflows),
+        ("mass inside before", whole.before),
+        ("mass inside after", whole.after),
+    )
+    return [(name, sum(mean(part.mass_si) for part in parts)) for name, parts in sides if parts]

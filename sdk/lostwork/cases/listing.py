@@ -2,20 +2,25 @@
 
 from __future__ import annotations
 
+import inspect
+import re
 import textwrap
 from collections.abc import Iterable
 from typing import Any
 
 import pint
 
+from lostwork.accounting.flows import Content
 from lostwork.cases.slots import Slot, process_class, slots
 from lostwork.cases.wiring import taken_by
 from lostwork.plugins import Descriptor, Installed, Plugins, plugins
 from lostwork.plugins.hooks import PLUGIN_API
+from lostwork.processes.contract import Process
 
 __all__ = ["list_fields", "list_plugins", "list_processes"]
 
 _INDENT = "    "
+_SECTION = re.compile(r"^[A-Z][a-z]+\n-{3,}$", re.MULTILINE)
 
 
 def list_plugins(installed: Plugins) -> str:
@@ -55,7 +60,7 @@ def list_fields(trade_name: str) -> str:
     summary = plugins().process(trade_name).summary
     known = slots(process)
     rows = [(name, f"{_needed(slot)}{taken_by(slot)}") for name, slot in known.items()]
-    lines = [f"{trade_name}: {summary}", ""]
+    lines = [f"{trade_name}: {summary}", "", *_said_of(process), ""]
     for (name, text), slot in zip(rows, known.values(), strict=True):
         lines.append(f"  {name}")
         lines += textwrap.wrap(text, 92, initial_indent=_INDENT, subsequent_indent=_INDENT)
@@ -67,6 +72,13 @@ def list_fields(trade_name: str) -> str:
     example = ["", "[steps.NAME]", f'type = "{trade_name}"']
     example += [f"{name} = {_example(slot)}" for name, slot in known.items() if slot.needed]
     return "\n".join([*lines, *example])
+
+
+def _said_of(process: type[Process]) -> list[str]:
+    """Give what the class says of itself, up to the sections for programmers."""
+    said = inspect.getdoc(process) or ""
+    prose, *_ = _SECTION.split(said, maxsplit=1)
+    return prose.rstrip().split("\n")
 
 
 def _heading(plugin: Installed) -> str:
@@ -122,7 +134,7 @@ def _shown(default: Any) -> str:
 
 def _example(slot: Slot) -> str:
     if slot.is_reference:
-        one = '"a stream or a step"'
+        one = '"a charge or a step"' if slot.flows == {Content} else '"a stream or a step"'
     elif slot.takes_heat:
         one = '{amount = "-30 kW", at = "80 degC"}'
     elif slot.takes_work:

@@ -141,6 +141,37 @@ def test_a_step_that_does_not_close_is_as_loud():
     assert "!! UNBALANCED: heater: energy does not close" in text
 
 
+def test_a_shared_stream_that_differs_at_its_ends_is_as_loud():
+    first = step("first", 20.0)
+    entering = lw.Stream(
+        lw.GivenState(h="500 kJ/kg", s="1000 J/kg/K"), rate="3 kg/s", name="first out"
+    )
+    leaving = lw.Stream(lw.GivenState(h="500 kJ/kg", s="1010 J/kg/K"), rate="3 kg/s")
+    second = lw.Balance(name="second", inflows=[entering], outflows=[leaving], surroundings=SITE)
+    text = export("table", lw.Audit([first, second]))
+    assert "!! DIFFERS: first out, from first to second: mass is 2 where it leaves" in text
+    assert "1 shared streams differ" not in text
+    assert "1 shared stream differs" in text
+
+
+def test_a_batch_shows_what_stands_inside_before_and_after():
+    gas = lw.Fluid("nitrogen", backend="ideal-gas")
+    before = lw.Content(gas.state(T="300 K", p="10 bar"), mass="3 kg")
+    after = lw.Content(gas.state(T="300 K", p="5 bar"), mass="3 kg")
+    balance = lw.Balance(name="free expansion", before=before, after=after, surroundings=SITE)
+    text = export("table", lw.Audit([balance]))
+    assert "mass inside before " in text
+    assert "mass in " not in text
+    assert " kJ " in text
+
+
+def test_remarks_are_folded_to_the_terminal():
+    words = "a remark of many words " * 20
+    audit = lw.Audit([step("valve", 20.0)], remarks=[lw.Finding("valve", "noise", words)])
+    text = export("table", audit, lw.Presentation(width=70))
+    assert max(len(line) for line in text.splitlines()) <= 70
+
+
 def test_an_impossible_loss_next_to_nothing_is_shown_in_full():
     text = export("table", lw.Audit([step("valve", 20.0), step("claim", -1e-6)]))
     assert row_of(text, "claim")[:3] == ["!!", "claim", "-6e-07"]
@@ -149,6 +180,7 @@ def test_an_impossible_loss_next_to_nothing_is_shown_in_full():
 def test_round_off_is_not_shown_as_a_result():
     text = export("table", lw.Audit([step("valve", 20.0), step("pipe", 1e-12)]))
     assert row_of(text, "pipe")[2] in ("0", "~0")
+    assert row_of(text, "pipe")[-2:] == ["reversible", "-"]
 
 
 def test_an_array_shows_means_the_gravest_verdict_and_its_rows(array):
