@@ -118,7 +118,10 @@ def _plan(name: str, table: dict[str, Any], layout: Layout, problems: Problems) 
             listed = ", ".join(known)
             problems.add(place, field, f"is missing; expected {taken_by(slot)}. Fields: {listed}")
     for field, value in values.items():
-        if field in known and known[field].is_reference:
+        if field in known and _holds_nothing(value):
+            text = f"holds an empty list; expected {taken_by(known[field])}"
+            problems.add(place, field, text)
+        elif field in known and known[field].is_reference:
             _check_references(place, known[field], value, layout, problems)
     if len(problems) > before:
         return None
@@ -199,6 +202,12 @@ def _defined_as(slot: Slot) -> str:
     if Content in slot.flows:
         words.append("a charge, or of a step whose content it is afterwards")
     return ", or of ".join(words)
+
+
+def _holds_nothing(value: Any) -> bool:
+    if not isinstance(value, list):
+        return False
+    return not value or any(_holds_nothing(entry) for entry in value)
 
 
 def _neither(slot: Slot) -> str:

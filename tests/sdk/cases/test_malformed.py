@@ -377,6 +377,35 @@ FILES = {
         with_measured('work = ["unknown"]\nheat = [{amount = "unknown", at = "15 degC"}]'),
         [COMPRESSOR, "more than one heat or work is unknown"],
     ),
+    "lists of two lengths in a stream": (
+        suction(T_SUCTION, 'T = ["20 degC", "30 degC", "40 degC"]').replace(
+            P_SUCTION, 'p = ["1 bar", "2 bar"]'
+        ),
+        [SUCTION, "T and p:", "different lengths", "expected one length"],
+    ),
+    "lists of two lengths in a step": (
+        suction(T_SUCTION, 'T = ["20 degC", "30 degC", "40 degC"]').replace(
+            P_OUT, 'p_out = ["8 bar", "9 bar"]'
+        ),
+        [COMPRESSOR, "different lengths", "expected one length"],
+    ),
+    "an empty list in a step": (
+        altered(P_OUT, "p_out = []"),
+        [COMPRESSOR, "p_out:", "empty list", "expected an absolute pressure"],
+    ),
+    "lists of two lengths in two steps": (
+        suction(T_SUCTION, 'T = ["20 degC", "30 degC", "40 degC"]')
+        + '[streams.other]\nfluid = "air"\nT = ["1 degC", "2 degC"]\np = "5 bar"\n'
+        + 'rate = "1 kg/s"\n[steps.other_valve]\ntype = "throttling"\ninlet = "other"\n'
+        + 'p_out = "2 bar"\n',
+        ["[steps.other_valve]", "(2,) rows", "(3,)", "expected one length"],
+    ),
+    "lists of two lengths in stream and surroundings": (
+        suction(T_SUCTION, 'T = ["20 degC", "30 degC", "40 degC"]').replace(
+            'T = "15 degC"', 'T = ["5 degC", "15 degC"]'
+        ),
+        [COMPRESSOR, "different lengths", "expected one length"],
+    ),
     # --- tables
     "no surroundings": (
         altered('[surroundings]\nT = "15 degC"\np = "1.013 bar"', ""),
