@@ -39,6 +39,8 @@ __all__ = ["Machine"]
 
 _MOST_CORRECTIONS = 30
 _STANDSTILL = 1e-11
+_NO_WORK = 1e-6
+"""Work below this share of p v is none."""
 
 
 @dataclass(frozen=True)
@@ -195,7 +197,7 @@ class Machine(FlowStep):
             work = rise + lost
         with np.errstate(invalid="ignore"):
             refusals.add(
-                self.sense * np.asarray(work) < -1e-6 * feed.p * feed.state.si.v,
+                self.sense * np.asarray(work) < -_NO_WORK * feed.p * feed.state.si.v,
                 "with the outlet at {T:.6g} K the shaft would turn the other way round "
                 "({w:.6g} J/kg into the fluid); check T_out and heat_loss",
                 T=self.si.T_out,
@@ -242,7 +244,11 @@ class Machine(FlowStep):
         with np.errstate(invalid="ignore"):
             hottest = np.maximum(feed.T, adiabatic.si.T)
             coldest = np.minimum(feed.T, adiabatic.si.T)
-            uphill = ((lost > 0.0) & (boundary > hottest)) | ((lost < 0.0) & (boundary < coldest))
+            # A machine that does nothing loses nothing, but for the noise of its end states.
+            noise = _NO_WORK * feed.p * feed.state.si.v
+            uphill = ((lost > noise) & (boundary > hottest)) | (
+                (lost < -noise) & (boundary < coldest)
+            )
         refusals.add(
             uphill,
             "heat_loss_at is {at:.6g} K while the fluid runs from {low:.6g} to {high:.6g} K: heat "

@@ -27,7 +27,9 @@ def assert_sound() -> Callable[..., lw.Balance]:
     return _assert_sound
 
 
-def _assert_sound(step: lw.Process, site: lw.Surroundings, *, slack: float = 1e-9) -> lw.Balance:
+def _assert_sound(
+    step: lw.Process, site: lw.Surroundings, *, slack: float = 1e-9, closing: float = 1e-6
+) -> lw.Balance:
     balance = step.balance(site)
     T0 = site.si.T
     throughput = sum(
@@ -37,10 +39,12 @@ def _assert_sound(step: lw.Process, site: lw.Surroundings, *, slack: float = 1e-
     scale = throughput + sum(np.abs(x.si) for x in (*balance.heat, *balance.work))
     assert balance.verdict.status in (lw.Status.possible, lw.Status.reversible), balance
     assert np.all(np.abs(balance.mass_residual.magnitude) <= 1e-9 * balance.inflows[0].mass_si)
-    assert np.all(np.abs(balance.energy_residual.magnitude) <= 1e-6 * scale)
+    assert np.all(np.abs(balance.energy_residual.magnitude) <= closing * scale)
     tolerance = balance.verdict.tolerance_si * T0 + slack * scale
     assert np.all(balance.work_lost_si >= -tolerance)
-    assert np.all(np.abs(balance.exergy_destroyed.magnitude - balance.work_lost_si) <= 1e-6 * scale)
+    assert np.all(
+        np.abs(balance.exergy_destroyed.magnitude - balance.work_lost_si) <= closing * scale
+    )
     parts = balance.losses_si
     assert set(parts) <= set(lw.MECHANISMS) - {"not attributed"}
     assert np.all(np.abs(sum(parts.values()) - balance.work_lost_si) <= tolerance)
