@@ -7,7 +7,7 @@ from typing import ClassVar
 import lostwork as lw
 from lostwork_plugins.flow.machine import Machine
 from lostwork_plugins.flow.pressures import raised_pressure
-from lostwork_plugins.flow.purposes import exergy_gain, measured_where
+from lostwork_plugins.flow.purposes import exergy_brought_by_heat, exergy_gain, measured_where
 from lostwork_plugins.flow.rows import Refusals
 from lostwork_plugins.flow.step import Alternatives, Inflow
 
@@ -34,12 +34,13 @@ class Driven(Machine):
     def purpose(self, balance: lw.Balance) -> lw.Purpose | None:
         """Shaft work expended for the rise of the exergy of the stream.
 
-        Heat lost above the temperature of the surroundings leaves unused.
+        Heat lost above the temperature of the surroundings leaves unused; exergy that heat brings in
+        is expended too.
         """
         gain = exergy_gain(self.inflow(self.inlet), self.outlet, balance.surroundings.si.T)
         return measured_where(
             gain > 0.0,
-            expended=self.work_in,
+            expended=self.work_in + exergy_brought_by_heat(balance),
             recovered=gain,
             expended_name="shaft work",
             recovered_name="exergy gained by the stream",

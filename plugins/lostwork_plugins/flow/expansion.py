@@ -9,7 +9,7 @@ import numpy as np
 import lostwork as lw
 from lostwork_plugins.flow.machine import Machine
 from lostwork_plugins.flow.pressures import lowered_pressure
-from lostwork_plugins.flow.purposes import exergy_gain, measured_where
+from lostwork_plugins.flow.purposes import exergy_brought_by_heat, exergy_gain, measured_where
 from lostwork_plugins.flow.rows import Refusals
 from lostwork_plugins.flow.step import Alternatives, Inflow
 
@@ -52,13 +52,14 @@ class Expansion(Machine):
         return lowered_pressure(self, refusals, feed.p)
 
     def purpose(self, balance: lw.Balance) -> lw.Purpose | None:
-        """Exergy given up by the stream, for shaft work."""
+        """Exergy given up by the stream, and brought by heat, for shaft work."""
         given = -np.asarray(
             exergy_gain(self.inflow(self.inlet), self.outlet, balance.surroundings.si.T)
         )
+        spent = given + exergy_brought_by_heat(balance)
         return measured_where(
-            given > 0.0,
-            expended=given,
+            spent > 0.0,
+            expended=spent,
             recovered=-np.asarray(self.work_in),
             expended_name="exergy given up by the stream",
             recovered_name="shaft work",

@@ -16,7 +16,7 @@ import lostwork as lw
 from lostwork_plugins.flow.rows import point_or_array
 from lostwork_plugins.flow.step import Inflow
 
-__all__ = ["exergy_gain", "measured_where", "one_gives_one_gains"]
+__all__ = ["exergy_brought_by_heat", "exergy_gain", "measured_where", "one_gives_one_gains"]
 
 
 def exergy_gain(
@@ -29,6 +29,20 @@ def exergy_gain(
         rise = rise + outlet.si.mechanical - feed.mechanical
     gain: lw.Column = feed.mass * rise
     return gain
+
+
+def exergy_brought_by_heat(balance: lw.Balance) -> lw.Column:
+    """Exergy that comes with heat, W (or J): sum of Q (1 - T0 / T_boundary) where it is above zero.
+
+    Heat taken from something hotter than the surroundings brings exergy, and so does heat given to
+    something colder than they are; both belong to what a step spends.
+    """
+    T0 = balance.surroundings.si.T
+    brought: lw.Column = 0.0
+    for heat in balance.heat:
+        if heat.si is not None:
+            brought = brought + np.maximum(heat.si * (1.0 - T0 / np.asarray(heat.T)), 0.0)
+    return point_or_array(brought)
 
 
 def measured_where(

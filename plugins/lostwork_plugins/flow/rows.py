@@ -5,7 +5,7 @@ A single point that cannot run raises at once; so does an array in which no row 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Mapping
 from typing import Any
 
 import numpy as np
@@ -59,6 +59,21 @@ class Refusals:
 
         if mask.all():
             raise lw.ProcessError(process=self._process, reason=said(0, mask.shape))
+        if mask.any():
+            self._refused.append((mask, said))
+
+    def add_rows(self, reasons: Mapping[int, str], shape: tuple[int, ...]) -> None:
+        """Refuse rows of `shape` by their flat index, each with a reason of its own."""
+        mask = np.zeros(int(np.prod(shape)), dtype=bool)
+        mask[list(reasons)] = True
+        mask = mask.reshape(shape)
+
+        def said(row: int, wider: tuple[int, ...]) -> str:
+            places = np.broadcast_to(np.arange(mask.size).reshape(shape), wider)
+            return reasons[int(np.ravel(places)[row])]
+
+        if mask.all():
+            raise lw.ProcessError(process=self._process, reason=said(0, shape))
         if mask.any():
             self._refused.append((mask, said))
 

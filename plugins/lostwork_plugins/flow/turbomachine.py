@@ -62,17 +62,8 @@ def polytropic_entropy(
     )
     path = _Path(refusals, feed.fluid, np.log(p_in), np.log(p_end), s_in, k)
     end = path.end()
-    lost = np.isnan(end) & np.isfinite(p_in) & np.isfinite(s_in)
-    if path.reason:
-        refusals.add(
-            lost, "the polytropic path leaves the range of the model: " + _literal(path.reason)
-        )
+    refusals.add_rows(path.reasons, p_in.shape)
     return point_or_array(end)
-
-
-def _literal(text: str) -> str:
-    """Guard braces in a text that is formatted later."""
-    return text.replace("{", "{{").replace("}", "}}")
 
 
 class _Path:
@@ -89,8 +80,8 @@ class _Path:
     ) -> None:
         self._refusals, self._fluid = refusals, fluid
         self._start, self._stop, self._s_in, self._k = start, stop, s_in, k
-        self.reason = ""
-        """Why a row failed on the way, if any did."""
+        self.reasons: dict[int, str] = {}
+        """Why a row failed on the way, by its flat index."""
 
     def end(self) -> _Array:
         """Entropy at the end."""
@@ -119,7 +110,10 @@ class _Path:
         for _ in range(_MOST_CORRECTIONS):
             # The refusals speak for rows; the nodes of a row share them by broadcasting.
             state = self._refusals.state(self._fluid, ("p", "s"), np.exp(log_p), s)
-            self.reason = self.reason or next(iter(state.failed.values()), "")
+            for place, reason in state.failed.items():
+                # The nodes run along the first axes, so a row is what is left of the index.
+                row = place % max(self._start.size, 1)
+                self.reasons.setdefault(row, f"the polytropic path leaves the model: {reason}")
             slope = self._k * state.si.p * state.si.v / state.si.T
             within = np.einsum("ij,pj...->pi...", cumulative, slope) * lengths[:, None]
             whole = np.einsum("j,pj...->p...", weights, slope) * lengths

@@ -119,3 +119,14 @@ def test_units_do_not_matter(site, constant_air) -> None:
     assert american.balance(site).work_lost_si == pytest.approx(
         metric.balance(site).work_lost_si, rel=1e-8
     )
+
+
+def test_a_row_whose_polytropic_path_leaves_the_equation_says_so() -> None:
+    fluid = lw.Fluid("R134a", backend="coolprop")
+    inlet = lw.Stream(fluid.state(T=["300 K", "440 K"], p="1 bar"), rate="1 kg/s")
+    step = lw.process("compression", inlet=inlet, pressure_ratio=4, polytropic_efficiency=0.6)
+    assert np.isnan(step.outlet.state.si.T).tolist() == [False, True]
+    assert "the polytropic path leaves the model" in step.outlet.state.failed[1]
+    hot = lw.Stream(fluid.state(T="440 K", p="1 bar"), rate="1 kg/s")
+    with pytest.raises(lw.ProcessError, match="outside the equation of R134a"):
+        lw.process("compression", inlet=hot, pressure_ratio=4, polytropic_efficiency=0.6).solve()
