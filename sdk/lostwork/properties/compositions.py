@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any, Literal
 
 from lostwork.errors import CompositionError, UnknownComponent
@@ -11,9 +11,10 @@ from lostwork.properties.backend import FluidSpec
 from lostwork.properties.components import Component, component
 from lostwork.quantities import FRACTION, to_si
 
-__all__ = ["NAMED_MIXTURES", "fluid_spec"]
+__all__ = ["NAMED_MIXTURES", "checked_spec", "fluid_spec"]
 
 _CLOSING = 1e-6
+_ROUND_OFF = 1e-12
 
 NAMED_MIXTURES: dict[str, tuple[Literal["amount", "mass"], dict[str, float]]] = {
     # Lemmon, Jacobsen, Penoncello and Friend, J. Phys. Chem. Ref. Data 29 (2000) 331.
@@ -78,6 +79,36 @@ def fluid_spec(
         if own is None:
             raise
         return _of_fractions(own, "amount", name=fluid.strip())
+
+
+def checked_spec(
+    components: Sequence[Component], mole_fractions: Sequence[float], name: str | None = None
+) -> FluidSpec:
+    """Give a specification from mole fractions that were computed, zeros left out.
+
+    Raises
+    ------
+    CompositionError
+        Not one fraction for each component, a negative one, or a sum other than 1.
+    """
+    shown = f"{[c.name for c in components]!r:.100} in {list(mole_fractions)!r:.100}"
+    if len(components) != len(mole_fractions):
+        raise CompositionError(
+            composition=shown,
+            reason=f"{len(components)} components take as many fractions, not "
+            f"{len(mole_fractions)}",
+        )
+    total = math.fsum(mole_fractions)
+    if min(mole_fractions, default=0.0) < 0.0:
+        raise CompositionError(composition=shown, reason="a fraction is negative")
+    if not abs(total - 1.0) <= _CLOSING:
+        raise CompositionError(composition=shown, reason=f"the fractions sum to {total:.9g}")
+    kept = [(c, x) for c, x in zip(components, mole_fractions, strict=True) if x > 0.0]
+    # What is off by round-off only stays as it is: a fluid that is reopened equals itself.
+    exact = abs(total - 1.0) <= _ROUND_OFF
+    return FluidSpec(
+        tuple(c for c, _ in kept), tuple(x if exact else x / total for _, x in kept), name
+    )
 
 
 def _of_fractions(

@@ -5,6 +5,7 @@ from __future__ import annotations
 import threading
 from collections import OrderedDict
 from collections.abc import Hashable, Mapping
+from types import MappingProxyType
 from typing import Any, Literal
 
 import numpy as np
@@ -25,7 +26,7 @@ from lostwork.properties.backend import (
     PropertyModel,
 )
 from lostwork.properties.components import Component
-from lostwork.properties.compositions import fluid_spec
+from lostwork.properties.compositions import checked_spec, fluid_spec
 from lostwork.properties.datum import Datum, Shift, shift_to_common
 from lostwork.properties.pairs import ordered_pair, solve_pair
 from lostwork.properties.state import SiState, State
@@ -83,8 +84,9 @@ class Fluid:
         The backend has no model of this fluid, or no such option.
     """
 
-    __slots__ = ("_model", "_shift", "backend", "options", "spec")
+    __slots__ = ("_identity", "_model", "_shift", "backend", "options", "spec")
 
+    _identity: tuple[Hashable, ...]
     _model: PropertyModel
     _shift: Shift
     spec: FluidSpec
@@ -104,19 +106,23 @@ class Fluid:
     ) -> None:
         source: Backend = plugins().backend(backend).load()()
         spec = (
-            fluid
+            checked_spec(fluid.components, fluid.mole_fractions, fluid.name)
             if isinstance(fluid, FluidSpec)
             else fluid_spec(fluid, basis, named=source.composition)
         )
         put = object.__setattr__
         put(self, "spec", spec)
         put(self, "backend", backend)
-        put(self, "options", dict(options))
+        put(self, "options", MappingProxyType(dict(options)))
+        put(self, "_identity", (backend, spec, _frozen(options)))
         model, shift = _opened(source, backend, spec, options)
         put(self, "_model", model)
         put(self, "_shift", shift)
 
     def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"a Fluid cannot be changed: {name}")
+
+    def __delattr__(self, name: str) -> None:
         raise AttributeError(f"a Fluid cannot be changed: {name}")
 
     def state(self, *, zero: Literal["common", "backend"] = "common", **given: Any) -> State:
@@ -148,8 +154,16 @@ class Fluid:
         StateNotFound
             A single point has no state.
         """
-        values = {self._canonical(name): self._si(name, value) for name, value in given.items()}
-        pair = ordered_pair(tuple(values) if len(values) == len(given) else tuple(given))
+        if zero not in ("common", "backend"):
+            raise PairRefused(
+                given=tuple(given),
+                reason=f"zero={zero!r} is no datum",
+                instead='Give zero="common" or zero="backend"',
+            )
+        pair = ordered_pair(tuple("v" if name == "rho" else name for name in given))
+        values = {
+            "v" if name == "rho" else name: self._si(name, value) for name, value in given.items()
+        }
         if zero == "common":
             for name, shifted in _SHIFTED.items():
                 if name in values:
@@ -174,14 +188,23 @@ class Fluid:
             SI values, floats or arrays that broadcast.
         shifted
             Whether h, u and s are on the common datum (as those of a `State` are).
+
+        Raises
+        ------
+        PairRefused
+            The two properties do not fix a state, or their shapes do not broadcast.
+        StateNotFound
+            A single point has no state.
         """
-        pair = ordered_pair(pair)
+        ordered = ordered_pair(pair)
+        if ordered != tuple(pair):
+            pair, x, y = ordered, y, x
         if shifted:
             x, y = self._unshifted(pair[0], x), self._unshifted(pair[1], y)
-        if not isinstance(x, np.ndarray) and not isinstance(y, np.ndarray):
+        if np.ndim(x) == 0 and np.ndim(y) == 0:
             return self._point(pair, float(x), float(y))
-        x, y = np.broadcast_arrays(x, y)
-        shape = x.shape
+        shape = _common_shape(pair, x, y)
+        x, y = np.broadcast_to(x, shape), np.broadcast_to(y, shape)
         columns = solve_pair(
             self._model,
             pair,
@@ -199,14 +222,13 @@ class Fluid:
         """Give the same components in other proportions, behind the same backend and options.
 
         Components whose fraction is zero are left out.
+
+        Raises
+        ------
+        CompositionError
+            Not one fraction for each component, a negative one, or a sum other than 1.
         """
-        total = sum(mole_fractions)
-        kept = [
-            (component, x / total)
-            for component, x in zip(self.spec.components, mole_fractions, strict=True)
-            if x > 0.0
-        ]
-        spec = FluidSpec(tuple(c for c, _ in kept), tuple(x for _, x in kept))
+        spec = checked_spec(self.spec.components, mole_fractions)
         return Fluid(spec, backend=self.backend, **self.options)
 
     def noise_at(self, T: Column, p: Column) -> Column:
@@ -263,14 +285,10 @@ class Fluid:
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Fluid):
             return NotImplemented
-        return self is other or (
-            self.backend == other.backend
-            and self.spec == other.spec
-            and _frozen(self.options) == _frozen(other.options)
-        )
+        return self is other or self._identity == other._identity
 
     def __hash__(self) -> int:
-        return hash((self.backend, self.spec, _frozen(self.options)))
+        return hash(self._identity)
 
     def __reduce__(self) -> tuple[Any, ...]:
         return _reopen, (self.spec, self.backend, dict(self.options))
@@ -303,18 +321,6 @@ class Fluid:
         shifted = _SHIFTED.get(name)
         return value - float(getattr(self._shift, shifted)) if shifted else value
 
-    @staticmethod
-    def _canonical(name: str) -> str:
-        if name == "rho":
-            return "v"
-        if name not in ("T", "p", "v", "h", "s", "u", "quality"):
-            raise PairRefused(
-                given=(name,),
-                reason="this is no property of a state",
-                instead="Give two of T, p, v (or rho), h, s, u, quality",
-            )
-        return name
-
     def _si(self, name: str, value: Any) -> Column:
         if name == "T":
             return to_si(value, TEMPERATURE, "T")
@@ -328,6 +334,17 @@ class Fluid:
         forms = _MOLAR_FORMS[name]
         number, dimension = to_si_any(value, forms, name)
         return number / self.molar_mass_si if dimension is forms[1] else number
+
+
+def _common_shape(pair: Pair, x: Column, y: Column) -> tuple[int, ...]:
+    try:
+        return np.broadcast_shapes(np.shape(x), np.shape(y))
+    except ValueError as error:
+        raise PairRefused(
+            given=pair,
+            reason=f"an array of shape {np.shape(x)} and one of {np.shape(y)} do not broadcast",
+            instead="Give arrays of one shape, or one of them as a single value",
+        ) from error
 
 
 def _checked_quality(quality: Column) -> Column:
@@ -359,13 +376,20 @@ def _opened(
         raise PluginFailed(
             plugin=backend, stage="open", reason="its model does not offer the pair T and p"
         )
-    label = f"{backend} {spec.name or ' + '.join(c.name for c in spec.components)}"
-    opened = (model, shift_to_common(spec, model, label))
+    opened = (model, shift_to_common(spec, model, _own_zero(backend, spec, options)))
     with _OPEN_LOCK:
         _OPEN[key] = opened
         while len(_OPEN) > _KEPT_OPEN:
             _OPEN.popitem(last=False)
     return opened
+
+
+def _own_zero(backend: str, spec: FluidSpec, options: Mapping[str, Any]) -> str:
+    """Name the zero of one model: of another composition or option, a model may have another."""
+    parts = zip(spec.components, spec.mole_fractions, strict=True)
+    matter = " + ".join(c.name if x == 1.0 else f"{x:.6g} {c.name}" for c, x in parts)
+    chosen = "".join(f", {name}={value!r}" for name, value in sorted(options.items()))
+    return f"{backend} {matter}{chosen}"
 
 
 def _frozen(value: Any) -> Hashable:

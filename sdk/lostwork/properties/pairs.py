@@ -38,6 +38,8 @@ _REFUSED: dict[Pair, tuple[str, str]] = {
     ("u", "quality"): ("quality along u has several roots", "Give p or T with quality"),
 }
 
+_GIVE_TWO = "Give two of T, p, v (or rho), h, s, u, quality"
+
 # A sign change is a root only if the residual there is gone; at a jump it is not.
 _ROOT_FRACTION = 1e-8
 _LEAST_PRESSURE = 1e-3
@@ -49,13 +51,16 @@ def ordered_pair(names: tuple[str, ...]) -> Pair:
     Raises
     ------
     PairRefused
-        Not two different properties, or a pair with several roots (h with T).
+        No property of a state, not two different ones, or a pair with several roots (h with T).
     """
+    unknown = tuple(name for name in names if name not in ORDER)
+    if unknown:
+        raise PairRefused(given=unknown, reason="this is no property of a state", instead=_GIVE_TWO)
     if len(set(names)) != 2 or len(names) != 2:
         raise PairRefused(
             given=tuple(names),
             reason="a pure fluid or a mixture of fixed composition takes exactly two properties",
-            instead="Give two of T, p, v (or rho), h, s, u, quality",
+            instead=_GIVE_TWO,
         )
     first, second = sorted(names, key=ORDER.index)
     pair = (first, second)
