@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import html
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any, Protocol, TypeAlias
@@ -15,6 +15,7 @@ import pint
 from lostwork.errors import DatumMismatch, StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.datum import Datum
+from lostwork.properties.formation import formation
 from lostwork.quantities import (
     PRESSURE,
     SPECIFIC_ENERGY,
@@ -31,6 +32,8 @@ if TYPE_CHECKING:
 __all__ = ["Change", "DeadState", "Matter", "SiState", "State"]
 
 Quantity: TypeAlias = "pint.Quantity[Any]"
+
+_SAME_FRACTION = 1e-9
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,6 +135,9 @@ class State:
         put(self, "_failed", MappingProxyType(dict(failed)))
 
     def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"a State cannot be changed: {name}")
+
+    def __delattr__(self, name: str) -> None:
         raise AttributeError(f"a State cannot be changed: {name}")
 
     @property
@@ -248,13 +254,22 @@ class State:
         )
         return close if close.shape else bool(close)
 
-    def reshape(self, *shape: int) -> State:
-        """Give the same states in another shape."""
-        return State(
-            self.fluid,
-            SiState(*(np.reshape(column, shape) for column in _columns(self.si))),
-            self.failed,
-        )
+    def reshape(self, *shape: int | tuple[int, ...]) -> State:
+        """Give the same states in another shape.
+
+        Raises
+        ------
+        StateNotFound
+            The shape holds another number of states.
+        """
+        wanted: Any = shape[0] if len(shape) == 1 else shape
+        try:
+            columns = [_frozen(np.reshape(column, wanted)) for column in _columns(self.si)]
+        except (ValueError, TypeError) as error:
+            raise StateNotFound(
+                fluid=self.label, given=f"shape {wanted}", reason=f"shape is {self.shape}"
+            ) from error
+        return State(self.fluid, SiState(*columns), self.failed)
 
     def __sub__(self, other: State) -> Change:
         """Change from `other` to this state.
@@ -262,11 +277,20 @@ class State:
         Raises
         ------
         DatumMismatch
-            The two are not on one datum.
+            The two are not on one datum, or differ by a component without formation data.
         """
+        if not isinstance(other, State):
+            return NotImplemented
         if self.datum != other.datum:
             raise DatumMismatch(
                 first=self.label, second=other.label, reason=f"{self.datum} against {other.datum}"
+            )
+        stray = _without_formation(self.fluid, other.fluid)
+        if stray:
+            raise DatumMismatch(
+                first=self.label,
+                second=other.label,
+                reason=f"their compositions differ and no formation data are known for {stray}",
             )
         a, b = self.si, other.si
         return Change(
@@ -296,6 +320,12 @@ class State:
         flat = np.ravel(places)
         failed = {i: self.failed[int(row)] for i, row in enumerate(flat) if int(row) in self.failed}
         return State(self.fluid, SiState(*(_frozen(c[key]) for c in _columns(si))), failed)
+
+    def __iter__(self) -> Iterator[State]:
+        return (self[row] for row in range(len(self)))
+
+    def __bool__(self) -> bool:
+        return 0 not in self.shape
 
     def __len__(self) -> int:
         if not self.shape:
@@ -349,6 +379,20 @@ class State:
         if not self.shape:
             facts.append(("phase", self.phase))
         return facts
+
+
+def _without_formation(one: Fluid, other: Fluid) -> str:
+    """Name a component that only one side holds as much of and that has no formation data."""
+    if one.spec == other.spec:
+        return ""
+    shares = [
+        dict(zip(f.spec.components, f.spec.mass_fractions, strict=True)) for f in (one, other)
+    ]
+    for component in {**shares[0], **shares[1]}:
+        here, there = (share.get(component, 0.0) for share in shares)
+        if abs(here - there) > _SAME_FRACTION and formation(component) is None:
+            return component.name
+    return ""
 
 
 def _columns(si: SiState) -> tuple[Any, ...]:
