@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from lostwork.errors import StateNotFound
+from lostwork.errors import IllPosed, StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.datum import Datum
 from lostwork.quantities import (
@@ -36,6 +36,13 @@ class GivenState:
         Name of the zero of h and s.  Only states of one datum are subtracted.
     label
         Name of the fluid, for messages.
+
+    Raises
+    ------
+    QuantityError
+        A value cannot be read.
+    IllPosed
+        The arrays do not broadcast to one shape.
     """
 
     __slots__ = ("_datum", "_label", "_si")
@@ -63,9 +70,33 @@ class GivenState:
             v=None if v is None else to_si(v, SPECIFIC_VOLUME, "v"),
             label=label,
         )
-        object.__setattr__(self, "_si", si)
-        object.__setattr__(self, "_datum", Datum(datum))
-        object.__setattr__(self, "_label", label)
+        self._fill(si, datum, label)
+
+    @classmethod
+    def from_si(
+        cls,
+        *,
+        h: Column,
+        s: Column,
+        T: Column | None = None,
+        p: Column | None = None,
+        v: Column | None = None,
+        datum: str = "given",
+        label: str = "given state",
+    ) -> GivenState:
+        """Make a given state from SI numbers: J/kg, J/kg/K, K, Pa, m3/kg."""
+        state = object.__new__(cls)
+        state._fill(_GivenSi(h=h, s=s, T=T, p=p, v=v, label=label), datum, label)
+        return state
+
+    def _fill(self, si: _GivenSi, datum: str, label: str) -> None:
+        put = object.__setattr__
+        put(self, "_si", si)
+        put(self, "_datum", Datum(datum))
+        put(self, "_label", label)
+
+    def __delattr__(self, name: str) -> None:
+        raise AttributeError(f"a GivenState cannot be changed: {name}")
 
     def __setattr__(self, name: str, value: object) -> None:
         raise AttributeError(f"a GivenState cannot be changed: {name}")
@@ -91,44 +122,42 @@ class GivenState:
     @property
     def failed(self) -> Mapping[int, str]:
         """Nothing fails: values are given."""
-        return MappingProxyType({})
+        return _NONE_FAILED
 
     @property
     def shape(self) -> tuple[int, ...]:
         """Shape of the columns."""
-        return np.broadcast_shapes(np.shape(self.si.h), np.shape(self.si.s))
+        return self.si.shape
 
     def __repr__(self) -> str:
         return f"GivenState({self.label}: h = {self.si.h} J/kg, s = {self.si.s} J/kg/K)"
 
 
+_NONE_FAILED: Mapping[int, str] = MappingProxyType({})
+
+
 class _GivenSi:
     """Given columns; one that is missing says so when it is asked for."""
 
-    __slots__ = ("_label", "_values")
+    __slots__ = ("_label", "_others", "h", "s", "shape")
 
-    def __init__(self, *, label: str, **values: Column | None) -> None:
+    def __init__(self, *, label: str, h: Column, s: Column, **others: Column | None) -> None:
+        self.h = _fixed(h)
+        self.s = _fixed(s)
+        self._others = {name: _fixed(value) for name, value in others.items()}
         self._label = label
-        self._values = values
+        self.shape = _shape_of(label, {"h": h, "s": s, **others})
 
     def __reduce__(self) -> tuple[Any, ...]:
-        return _restored_given_si, (self._label, self._values)
+        return _restored_given_si, (self._label, self.h, self.s, self._others)
 
     def _value(self, name: str) -> Column:
-        value = self._values[name]
+        value = self._others[name]
         if value is None:
             raise StateNotFound(
                 fluid=self._label, given="h and s", reason=f"{name} is needed here; give {name}="
             )
         return value
-
-    @property
-    def h(self) -> Column:
-        return self._value("h")
-
-    @property
-    def s(self) -> Column:
-        return self._value("s")
 
     @property
     def T(self) -> Column:
@@ -144,16 +173,35 @@ class _GivenSi:
 
     @property
     def u(self) -> Column:
-        return self._value("h") - self._value("p") * self._value("v")
+        return self.h - self._value("p") * self._value("v")
 
 
-def _restored_given_si(label: str, values: dict[str, Column | None]) -> _GivenSi:
-    return _GivenSi(label=label, **values)
+def _fixed(value: Any) -> Any:
+    """Give a float as it is, and an array as one that nobody writes to."""
+    if isinstance(value, np.ndarray):
+        value = value.copy()
+        value.flags.writeable = False
+    return value
+
+
+def _shape_of(label: str, values: Mapping[str, Column | None]) -> tuple[int, ...]:
+    shapes = {name: v.shape for name, v in values.items() if isinstance(v, np.ndarray)}
+    try:
+        return np.broadcast_shapes(*shapes.values()) if shapes else ()
+    except ValueError as error:
+        told = ", ".join(f"{name} {shape}" for name, shape in shapes.items())
+        raise IllPosed(
+            balance=label, reason=f"its arrays do not broadcast to one shape: {told}"
+        ) from error
+
+
+def _restored_given_si(
+    label: str, h: Column, s: Column, others: dict[str, Column | None]
+) -> _GivenSi:
+    return _GivenSi(label=label, h=h, s=s, **others)
 
 
 def _restored_given(si: _GivenSi, datum: str, label: str) -> GivenState:
     state = object.__new__(GivenState)
-    object.__setattr__(state, "_si", si)
-    object.__setattr__(state, "_datum", Datum(datum))
-    object.__setattr__(state, "_label", label)
+    state._fill(si, datum, label)
     return state
