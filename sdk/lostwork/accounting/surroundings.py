@@ -5,9 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+import numpy as np
 import pint
 
-from lostwork.errors import PropertyError, StateNotFound
+from lostwork.errors import IllPosed, PropertyError, StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.fluid import Fluid
 from lostwork.properties.state import DeadState
@@ -33,6 +34,13 @@ class Surroundings:
         Temperature T0; one value, or an array for a sweep.
     p
         Absolute pressure p0; also the barometer for gauge pressures in a case file.
+
+    Raises
+    ------
+    QuantityError
+        A value cannot be read.
+    IllPosed
+        Arrays of T0 and p0 do not broadcast.
     """
 
     __slots__ = ("_dead_states", "_si")
@@ -41,11 +49,22 @@ class Surroundings:
     _dead_states: dict[Fluid, DeadState | PropertyError]
 
     def __init__(self, *, T: Any, p: Any) -> None:
-        si = SiSurroundings(to_si(T, TEMPERATURE, "T0"), to_si(p, PRESSURE, "p0"))
+        si = SiSurroundings(_fixed(to_si(T, TEMPERATURE, "T0")), _fixed(to_si(p, PRESSURE, "p0")))
+        try:
+            np.broadcast_shapes(np.shape(si.T), np.shape(si.p))
+        except ValueError as error:
+            raise IllPosed(
+                balance="surroundings",
+                reason=f"T0 of shape {np.shape(si.T)} and p0 of shape {np.shape(si.p)} do not "
+                "broadcast to one sweep",
+            ) from error
         object.__setattr__(self, "_si", si)
         object.__setattr__(self, "_dead_states", {})
 
     def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"Surroundings cannot be changed: {name}")
+
+    def __delattr__(self, name: str) -> None:
         raise AttributeError(f"Surroundings cannot be changed: {name}")
 
     @property
@@ -98,16 +117,25 @@ class Surroundings:
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Surroundings):
             return NotImplemented
-        return repr(self) == repr(other)
+        return self is other or (
+            np.array_equal(self.si.T, other.si.T) and np.array_equal(self.si.p, other.si.p)
+        )
 
     def __hash__(self) -> int:
-        return hash(repr(self))
+        return hash((np.asarray(self.si.T).tobytes(), np.asarray(self.si.p).tobytes()))
 
     def __reduce__(self) -> tuple[Any, ...]:
         return _restored, (self.si.T, self.si.p)
 
     def __repr__(self) -> str:
         return f"Surroundings(T='{self.si.T} K', p='{self.si.p} Pa')"
+
+
+def _fixed(value: Column) -> Column:
+    """Give a float as it is; make an array read-only, for results are cached by it."""
+    if isinstance(value, np.ndarray):
+        value.flags.writeable = False
+    return value
 
 
 def _restored(T: Column, p: Column) -> Surroundings:
