@@ -34,8 +34,8 @@ class Driven(Machine):
     def purpose(self, balance: lw.Balance) -> lw.Purpose | None:
         """Shaft work expended for the rise of the exergy of the stream.
 
-        Heat lost above the temperature of the surroundings leaves unused; exergy that heat brings in
-        is expended too.
+        Heat lost above the temperature of the surroundings leaves unused; exergy that heat brings
+        in is expended too.
         """
         gain = exergy_gain(self.inflow(self.inlet), self.outlet, balance.surroundings.si.T)
         return measured_where(

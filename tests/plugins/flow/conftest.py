@@ -55,13 +55,13 @@ def _assert_sound(
 
 
 def _assert_purpose_closes(step: Any, balance: lw.Balance, T0: Any, scale: Any) -> None:
-    """Expended less recovered is destroyed, or leaves unused with heat."""
+    """Expended less recovered is destroyed, or leaves unused with heat that carries exergy away."""
     purpose = balance.purpose
     if purpose is None:
         return
     unused = 0.0
     if type(step).trade_name not in ("heating", "cooling"):
-        unused = -sum(q.si * (1.0 - T0 / q.T) for q in balance.heat)
+        unused = -sum(np.minimum(q.si * (1.0 - T0 / q.T), 0.0) for q in balance.heat)
     gap = purpose.expended - purpose.recovered - balance.work_lost_si - unused
     known = np.isfinite(gap)
     assert np.any(known)
