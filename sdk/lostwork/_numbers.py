@@ -16,7 +16,7 @@ __all__ = ["Numbers", "is_number", "possible", "to_numbers"]
 
 Numbers = float | NDArray[np.float64]
 
-_CHUNK: Final = 16384
+_CHUNK: Final = 65536
 
 
 def possible(si: float, dimension: Dimension) -> bool:
@@ -44,7 +44,7 @@ def to_numbers(
     `value` is what the caller gave, for the message.
     """
     if isinstance(magnitude, np.ma.MaskedArray):
-        magnitude = magnitude.astype(np.float64).filled(np.nan)
+        magnitude = np.ma.filled(magnitude.astype(np.float64), np.nan)
     numbers = np.asarray(magnitude)
     if numbers.dtype.kind == "O":
         numbers = _plain_numbers(numbers, dimension, field, value)
@@ -69,6 +69,9 @@ def _plain_numbers(
         numbers = [float(number) for number in flat]
     except OverflowError:
         raise refused(NotFinite, (dimension,), field, value) from None
+    except (TypeError, ValueError) as cause:
+        hint = "Only real numbers are taken"
+        raise refused(QuantityError, (dimension,), field, value, hint) from cause
     return np.array(numbers, dtype=np.float64).reshape(objects.shape)
 
 
@@ -86,8 +89,8 @@ def _scaled(
             np.multiply(source[start : start + _CHUNK], scale, out=piece, casting="same_kind")
             if offset:
                 piece += offset
-            # A sum is finite only if every term is; a minimum is NaN if any term is.
-            sound = sound and math.isfinite(piece.sum()) and _at_least(piece.min(), dimension)
+            # A sum of squares is finite only if every term is, and is the quickest sum there is.
+            sound = sound and math.isfinite(piece.dot(piece)) and _at_least(piece, dimension)
     if not sound:
         _find_fault(si, numbers, dimension, field)
     return si
@@ -104,7 +107,7 @@ def _find_fault(
         with np.errstate(invalid="ignore"):
             sound = finite & ((si > low) if dimension.strict else (si >= low))
     faults = np.argwhere(~sound)
-    if not faults.size:  # the finite terms only summed to infinity
+    if not faults.size:  # only the squares were not finite
         return
     first = tuple(int(i) for i in faults[0])
     where = f"{field}[{', '.join(map(str, first))}]"
@@ -112,8 +115,5 @@ def _find_fault(
     raise impossible(float(si[first]), dimension, where, given[first], count)
 
 
-def _at_least(number: float, dimension: Dimension) -> bool:
-    low = dimension.minimum
-    if low is None:
-        return True
-    return bool(number > low if dimension.strict else number >= low)
+def _at_least(numbers: NDArray[np.float64], dimension: Dimension) -> bool:
+    return dimension.minimum is None or possible(float(numbers.min()), dimension)

@@ -99,7 +99,7 @@ class Book:
         self.quantity: Callable[[Any, Any], pint.Quantity[Any]] = registry.Quantity
         self.numbers: dict[Any, float] = {}
         self._texts: dict[str, Reading] = {}
-        self._containers: dict[Any, Reading] = {}
+        self.containers: dict[Any, Reading] = {}
         self._lock = threading.RLock()
 
     def text(self, unit: str) -> Reading:
@@ -121,10 +121,10 @@ class Book:
         UnknownUnit
             A unit is not of this registry, or counts on a logarithmic scale.
         """
-        reading = self._containers.get(units)
+        reading = self.containers.get(units)
         if reading is not None:
             return reading
-        return self._noted(self._containers, units, self._read_container)
+        return self._noted(self.containers, units, self._read_container)
 
     def remember(self, key: Any, number: float) -> None:
         """Keep the SI value of a text that was read, within bounds."""
@@ -264,7 +264,7 @@ def _whole(power: float) -> float:
     return int(power) if power == int(power) else power
 
 
-_APPLICATION: Final = pint.get_application_registry()
+_APPLICATION: Final[ApplicationRegistry] = pint.application_registry
 _books: OrderedDict[int, Book] = OrderedDict()
 _books_lock = threading.Lock()
 _current: Book | None = None
@@ -285,7 +285,7 @@ def _book(registry: Registry) -> Book:
 def application_book() -> Book:
     """Give the book of the application registry, which a host may swap at any time."""
     global _current  # noqa: PLW0603  one word, written whole: the last book used
-    registry = _APPLICATION.get()
+    registry = _APPLICATION.get()  # type: ignore[no-untyped-call]
     book = _current
     if book is None or book.registry is not registry:
         book = _current = _book(registry)

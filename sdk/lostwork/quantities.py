@@ -18,7 +18,7 @@ Conventions
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, Final
 
 import numpy as np
 import pint
@@ -60,7 +60,7 @@ from lostwork._dimensions import (
 from lostwork._numbers import Numbers, is_number, possible, to_numbers
 from lostwork._reading import DEEPEST, choose, read_quantity, read_text
 from lostwork._refusals import impossible, offset_of, refused, wrong_dimension
-from lostwork._registries import Kind, Reading, application_book
+from lostwork._registries import Kind, Reading, application_book, book_of
 from lostwork._units import LONGEST, shortened
 from lostwork.errors import GaugePressure, MissingUnit, NotAbsolute, QuantityError
 
@@ -101,6 +101,8 @@ __all__ = [
     "to_si_any",
 ]
 
+_PLAIN: Final = Kind.PLAIN
+
 
 def to_si(
     value: Any, dimension: Dimension, field: str, *, barometer: float | None = None
@@ -136,6 +138,8 @@ def to_si(
         return _from_text(value, dimension, field, barometer)
     if isinstance(value, PlainQuantity):
         return _from_quantity(value, dimension, field, barometer)
+    if type(value) is float and not dimension.signature and possible(value, dimension):
+        return value
     return _from_other(value, dimension, field, barometer, 0)
 
 
@@ -245,11 +249,13 @@ def _from_text(text: str, dimension: Dimension, field: str, barometer: float | N
 def _from_quantity(
     value: PlainQuantity[Any], dimension: Dimension, field: str, barometer: float | None
 ) -> Numbers:
-    reading = read_quantity(value, (dimension,), field)
+    reading = book_of(value).containers.get(value._units)
+    if reading is None:
+        reading = read_quantity(value, (dimension,), field)
     magnitude = value._magnitude
     offset = reading.offset
-    if reading.signature != dimension.signature or reading.kind is not Kind.PLAIN:
-        number = magnitude if isinstance(magnitude, float) else None
+    if reading.kind is not _PLAIN or reading.signature != dimension.signature:
+        number = float(magnitude) if isinstance(magnitude, float | int) else None
         offset = offset_of(reading, dimension, field, value, barometer, number)
     if type(magnitude) is float:
         si = magnitude * reading.scale + offset
@@ -262,12 +268,16 @@ def _from_quantity(
 def _from_other(
     value: Any, dimension: Dimension, field: str, barometer: float | None, depth: int
 ) -> Numbers:
+    if depth > DEEPEST:
+        raise refused(QuantityError, (dimension,), field, "a list", "It is nested too deeply")
     if isinstance(value, str):
         return to_si(str(value), dimension, field, barometer=barometer)
+    if hasattr(value, "__array__") and not isinstance(value, np.ndarray | np.generic):
+        value = np.asarray(value)
     if isinstance(value, np.ndarray) and value.dtype.kind in "OUT":
         value = value.tolist()
         if not isinstance(value, list):
-            return to_si(value, dimension, field, barometer=barometer)
+            return _from_part(value, dimension, field, barometer, depth + 1)
     if isinstance(value, list | tuple):
         return _from_list(value, dimension, field, barometer, depth)
     if not is_number(value):
@@ -280,18 +290,22 @@ def _from_other(
 def _from_list(
     values: Sequence[Any], dimension: Dimension, field: str, barometer: float | None, depth: int
 ) -> NDArray[np.float64]:
-    if depth >= DEEPEST:
-        raise refused(QuantityError, (dimension,), field, "a list", "It is nested too deeply")
     parts = [
-        _from_other(part, dimension, f"{field}[{index}]", barometer, depth + 1)
-        if isinstance(part, list | tuple)
-        else to_si(part, dimension, f"{field}[{index}]", barometer=barometer)
+        _from_part(part, dimension, f"{field}[{index}]", barometer, depth + 1)
         for index, part in enumerate(values)
     ]
     if len({np.shape(part) for part in parts}) > 1:
         hint = "Its rows are of different lengths"
         raise refused(QuantityError, (dimension,), field, "a list", hint)
     return np.array(parts, dtype=np.float64)
+
+
+def _from_part(
+    value: Any, dimension: Dimension, field: str, barometer: float | None, depth: int
+) -> Numbers:
+    if isinstance(value, str | PlainQuantity):
+        return to_si(value, dimension, field, barometer=barometer)
+    return _from_other(value, dimension, field, barometer, depth)
 
 
 def _checked_barometer(barometer: float) -> float:
