@@ -124,7 +124,7 @@ class NotFinite(QuantityError):
 
 
 class NotAbsolute(QuantityError):
-    """The value is below what is physically possible (absolute zero, negative pressure or volume)."""
+    """The value is below the least that is possible (absolute zero, a vacuum, no volume)."""
 
     cause = "is below the least value that is physically possible"
 
@@ -486,7 +486,9 @@ class CaseError(LostworkError, ValueError):
     @property
     def message(self) -> str:
         return "\n".join(
-            f"{self.file}: [{table}] {name}: {text}" if name else f"{self.file}: [{table}] {text}"
+            f"{self.file}: [{table}] {name}: {text}"
+            if name
+            else f"{self.file}: [{table}] {text}"
             if table
             else f"{self.file}: {text}"
             for table, name, text in self.problems

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from lostwork.accounting.arithmetic import anywhere, larger, ratio, size
 from lostwork.accounting.entries import Entry, summed
 from lostwork.errors import DatumMismatch
 from lostwork.properties.backend import Column
@@ -20,6 +21,9 @@ from lostwork.properties.formation import formation
 from lostwork.properties.state import Matter, State
 
 __all__ = ["Conservation", "check_datums", "conservation"]
+
+
+_SAME_FRACTION = 1e-12
 
 
 @dataclass(frozen=True)
@@ -75,9 +79,9 @@ def conservation(entries: list[Entry], closing: float) -> Conservation:
         spec = state.fluid.spec
         for component, fraction in zip(spec.components, spec.mass_fractions, strict=True):
             by_component.setdefault(component, []).append(mass * fraction)
-    total = summed(np.abs(mass) for _, mass in states)
-    residual, worst = _largest({c.name: summed(m) / total for c, m in by_component.items()})
-    if np.all(np.asarray(residual) <= closing):
+    total = summed(size(mass) for _, mass in states)
+    residual, worst = _largest({c.name: ratio(summed(m), total) for c, m in by_component.items()})
+    if not anywhere(residual > closing):
         return Conservation(False, reacting=False, residual=residual, worst=worst)
     return _by_elements(by_component)
 
@@ -89,8 +93,9 @@ def _same_composition(states: list[tuple[State, Column]]) -> bool:
         or (
             first is not None
             and state.fluid.spec.components == first.components
-            and np.allclose(
-                state.fluid.spec.mole_fractions, first.mole_fractions, rtol=0.0, atol=1e-12
+            and all(
+                abs(x - y) <= _SAME_FRACTION
+                for x, y in zip(state.fluid.spec.mole_fractions, first.mole_fractions, strict=True)
             )
         )
         for state, _ in states
@@ -104,12 +109,12 @@ def _by_elements(by_component: dict[Component, list[Column]]) -> Conservation:
         for element, count in component.elements:
             amounts = [count * mass / component.molar_mass for mass in masses]
             atoms.setdefault(element, []).extend(amounts)
-            gross = gross + summed(np.abs(amount) for amount in amounts)
-    residual, worst = _largest({element: summed(n) / gross for element, n in atoms.items()})
+            gross = gross + summed(size(amount) for amount in amounts)
+    residual, worst = _largest({element: ratio(summed(n), gross) for element, n in atoms.items()})
     unformed = [
         component.name
         for component, masses in by_component.items()
-        if formation(component) is None and np.any(np.abs(summed(masses)) > 1e-9 * _gross(masses))
+        if formation(component) is None and anywhere(size(summed(masses)) > 1e-9 * _gross(masses))
     ]
     if unformed:
         raise DatumMismatch(
@@ -121,11 +126,18 @@ def _by_elements(by_component: dict[Component, list[Column]]) -> Conservation:
 
 
 def _gross(masses: list[Column]) -> Column:
-    return summed(np.abs(mass) for mass in masses)
+    return summed(size(mass) for mass in masses)
 
 
 def _largest(residuals: dict[str, Column]) -> tuple[Column, str]:
-    worst = max(residuals, key=lambda name: float(np.nanmax(np.abs(residuals[name]))))
-    stacked = np.broadcast_arrays(*(np.abs(value) for value in residuals.values()))
-    largest = np.max(np.stack(stacked), axis=0)
-    return (largest if largest.shape else float(largest)), worst
+    """Give the largest residual of each row, and the name that has the largest of all."""
+    worst = max(residuals, key=lambda name: _largest_known(residuals[name]))
+    largest: Column = 0.0
+    for value in residuals.values():
+        largest = larger(largest, size(value))
+    return largest, worst
+
+
+def _largest_known(value: Column) -> float:
+    sizes = np.ravel(size(value))
+    return float(np.max(sizes, where=np.isfinite(sizes), initial=0.0))

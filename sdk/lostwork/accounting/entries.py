@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TypeAlias
 
 from lostwork.accounting.flows import Content, Stream
@@ -30,7 +31,7 @@ class Entries:
     after: tuple[Content, ...]
     per_time: bool
 
-    @property
+    @cached_property
     def matter(self) -> list[Entry]:
         """Every stream and content with its signed mass."""
         entries: list[Entry] = [(s.state, s.mass_si) for s in self.inflows]
@@ -39,19 +40,19 @@ class Entries:
         entries += [(c.state, -c.mass_si) for c in self.after]
         return entries
 
-    @property
+    @cached_property
     def heat_total(self) -> Column:
         """All heat into the system, W (or J)."""
         return summed(known(q.si) for q in self.heat)
 
-    @property
+    @cached_property
     def work_total(self) -> Column:
         """All work into the system, W (or J)."""
         return summed(known(w.si) for w in self.work)
 
-    @property
+    @cached_property
     def volume_change(self) -> Column:
-        """Growth of the volume inside the boundary, m3."""
+        """Growth of the volume that the contents take up, m3."""
         return summed(c.mass_si * c.state.si.v for c in self.after) - summed(
             c.mass_si * c.state.si.v for c in self.before
         )

@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, TypeAlias
 
-import numpy as np
 import pint
 
+from lostwork.accounting.arithmetic import anywhere
 from lostwork.accounting.surroundings import Surroundings
 from lostwork.errors import IllPosed
 from lostwork.properties.backend import Column
@@ -35,6 +35,14 @@ GRAVITY = 9.80665
 """Standard acceleration of free fall, m/s2 (ISO 80000-3)."""
 
 
+def _require_matter(state: Any, label: str) -> None:
+    if not hasattr(state, "si") or not hasattr(state, "datum"):
+        raise IllPosed(
+            balance=label,
+            reason=f"matter is a State or a GivenState, given first; got {state!r:.80}",
+        )
+
+
 def _mass_si(
     value: Any, state: Matter, dimensions: tuple[Dimension, Dimension, Dimension], field: str
 ) -> Column:
@@ -47,7 +55,7 @@ def _mass_si(
         number = number * state.fluid.molar_mass_si
     elif dimension is by_volume:
         number = number / state.si.v
-    if np.any(np.asarray(number) < 0.0):
+    if anywhere(number < 0.0):
         raise IllPosed(
             balance=field,
             reason=f"{value} is negative; the direction is told by inflows and outflows",
@@ -108,6 +116,7 @@ class Stream:
         elevation: Any = None,
         name: str = "",
     ) -> None:
+        _require_matter(state, name or "stream")
         if rate is not None and mass is not None:
             raise IllPosed(balance=name or "stream", reason="give a rate or a mass, not both")
         number: Column | None = None
@@ -163,7 +172,8 @@ class Stream:
     @property
     def mass_si(self) -> Column:
         """Mass flow (kg/s) or mass (kg) as a plain number; an error while it is unknown."""
-        return self._known_mass()
+        mass = self._si.mass
+        return self._known_mass() if mass is None else mass
 
     def exergy(self, site: Surroundings) -> Quantity:
         """Specific flow exergy with kinetic and potential parts, J/kg.
@@ -262,6 +272,7 @@ class Content:
         elevation: Any = None,
         name: str = "",
     ) -> None:
+        _require_matter(state, name or "content")
         self._fill(
             state,
             _mass_si(mass, state, (MASS, AMOUNT, VOLUME), "mass"),

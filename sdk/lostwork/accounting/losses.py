@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+from lostwork.errors import IllPosed
 from lostwork.properties.backend import Column
 from lostwork.quantities import ENERGY, POWER, to_si_any
 
@@ -42,10 +43,24 @@ class Purpose:
     def of(
         cls, *, expended: Any, recovered: Any, expended_name: str, recovered_name: str
     ) -> Purpose:
-        """Make a purpose from quantities (power or energy)."""
+        """Make a purpose from quantities, two powers or two energies.
+
+        Raises
+        ------
+        IllPosed
+            One is a power and the other an energy.
+        """
+        spent, dimension = to_si_any(expended, (POWER, ENERGY), "expended")
+        gained, other = to_si_any(recovered, (POWER, ENERGY), "recovered")
+        if dimension is not other:
+            raise IllPosed(
+                balance="purpose",
+                reason=f"{expended_name} ({expended}) and {recovered_name} ({recovered}) are not "
+                "both powers or both energies",
+            )
         return cls(
-            expended=to_si_any(expended, (POWER, ENERGY), "expended")[0],
-            recovered=to_si_any(recovered, (POWER, ENERGY), "recovered")[0],
+            expended=spent,
+            recovered=gained,
             expended_name=expended_name,
             recovered_name=recovered_name,
         )

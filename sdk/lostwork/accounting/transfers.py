@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, TypeAlias
 
+import numpy as np
 import pint
 
 from lostwork.properties.backend import Column
@@ -15,7 +16,7 @@ __all__ = ["Heat", "Work"]
 Quantity: TypeAlias = "pint.Quantity[Any]"
 
 
-@dataclass(frozen=True, slots=True, init=False)
+@dataclass(frozen=True, slots=True, init=False, eq=False)
 class Heat:
     """Heat across the boundary, positive into the system.
 
@@ -67,8 +68,18 @@ class Heat:
         """Boundary temperature, K."""
         return quantity(self.T, "K")
 
+    def __eq__(self, other: object) -> bool:
+        if not isinstance(other, Heat):
+            return NotImplemented
+        return _identity(self.si, self.T, self.per_time, self.name) == _identity(
+            other.si, other.T, other.per_time, other.name
+        )
 
-@dataclass(frozen=True, slots=True, init=False)
+    def __hash__(self) -> int:
+        return hash(_identity(self.si, self.T, self.per_time, self.name))
+
+
+@dataclass(frozen=True, slots=True, init=False, eq=False)
 class Work:
     """Work across the boundary (shaft, electric or by a moving boundary), positive into the system.
 
@@ -110,6 +121,24 @@ class Work:
     def amount(self) -> Quantity | None:
         """W or J; ``None`` while unknown."""
         return None if self.si is None else quantity(self.si, "W" if self.per_time else "J")
+
+    def __eq__(self, other: object) -> bool:
+        if not isinstance(other, Work):
+            return NotImplemented
+        return _identity(self.si, self.per_time, self.name) == _identity(
+            other.si, other.per_time, other.name
+        )
+
+    def __hash__(self) -> int:
+        return hash(_identity(self.si, self.per_time, self.name))
+
+
+def _identity(*fields: Any) -> tuple[Any, ...]:
+    """Give fields in a form that compares and hashes, arrays by their shape and numbers."""
+    return tuple(
+        (field.shape, field.tobytes()) if isinstance(field, np.ndarray) else field
+        for field in fields
+    )
 
 
 def _energy_si(value: Any, field: str) -> tuple[Column, bool]:

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from typing import TypeVar
 
 import numpy as np
 
+from lostwork.accounting.arithmetic import anywhere, size
 from lostwork.accounting.entries import Entries, summed
 from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.transfers import Heat, Work
@@ -14,6 +16,10 @@ from lostwork.errors import IllPosed
 from lostwork.properties.backend import Column
 
 __all__ = ["collect", "solve_energy"]
+
+Kind = TypeVar("Kind", Stream, Heat, Work, Content)
+
+_ROUND_OFF = 1e-14
 
 
 def collect(
@@ -30,18 +36,37 @@ def collect(
     Raises
     ------
     IllPosed
-        Rates mixed with totals, nothing known, or more than one stream without a rate.
+        Not lists of what they should hold, rates mixed with totals, nothing known, or more than one
+        stream without a rate.
     """
     entries = Entries(
-        inflows=tuple(inflows),
-        outflows=tuple(outflows),
-        heat=tuple(heat),
-        work=tuple(work),
-        before=tuple(before),
-        after=tuple(after),
+        inflows=_listed(name, "inflows", inflows, Stream),
+        outflows=_listed(name, "outflows", outflows, Stream),
+        heat=_listed(name, "heat", heat, Heat),
+        work=_listed(name, "work", work, Work),
+        before=_listed(name, "before", before, Content),
+        after=_listed(name, "after", after, Content),
         per_time=_kind(name, (*inflows, *outflows, *heat, *work), bool(before or after)),
     )
     return _solve_rate(name, entries)
+
+
+def _listed(name: str, field: str, items: Sequence[Kind], kind: type[Kind]) -> tuple[Kind, ...]:
+    if isinstance(items, kind):
+        raise IllPosed(balance=name, reason=f"{field} takes a list; put the {kind.__name__} in [ ]")
+    try:
+        listed = tuple(items)
+    except TypeError as error:
+        raise IllPosed(
+            balance=name, reason=f"{field} takes a list of {kind.__name__}; got {items!r:.80}"
+        ) from error
+    for item in listed:
+        if not isinstance(item, kind):
+            raise IllPosed(
+                balance=name,
+                reason=f"{field} takes a list of {kind.__name__}; in it is {item!r:.80}",
+            )
+    return listed
 
 
 def solve_energy(
@@ -121,10 +146,13 @@ def _solve_rate(name: str, entries: Entries) -> Entries:
     )
     if any(s is sought for s in entries.inflows):
         needed = -needed
-    if np.any(np.asarray(needed) < 0.0):
+    needed = _without_round_off(needed, summed(size(mass) for mass in _known_masses(entries)))
+    if anywhere(needed < 0.0):
+        unit = "kg/s" if entries.per_time else "kg"
         raise IllPosed(
             balance=name,
-            reason=f"the stream without a rate would have to flow backwards ({needed} kg)",
+            reason=f"the stream without a rate, {sought.name or sought.state.label}, would have to "
+            f"flow backwards ({needed} {unit})",
         )
     found = sought.with_mass(needed, per_time=entries.per_time)
     return replace(
@@ -132,3 +160,15 @@ def _solve_rate(name: str, entries: Entries) -> Entries:
         inflows=tuple(found if s is sought else s for s in entries.inflows),
         outflows=tuple(found if s is sought else s for s in entries.outflows),
     )
+
+
+def _known_masses(entries: Entries) -> list[Column]:
+    streams = [s.si.mass for s in (*entries.inflows, *entries.outflows) if s.si.mass is not None]
+    return [*streams, *(c.mass_si for c in (*entries.before, *entries.after))]
+
+
+def _without_round_off(needed: Column, scale: Column) -> Column:
+    """Give zero for what is left over by the rounding of the sum alone."""
+    if isinstance(needed, np.ndarray):
+        return np.where(size(needed) <= _ROUND_OFF * scale, 0.0, needed)
+    return 0.0 if abs(needed) <= _ROUND_OFF * scale else needed

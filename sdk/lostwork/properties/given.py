@@ -141,6 +141,10 @@ class _GivenSi:
 
     __slots__ = ("_label", "_others", "h", "s", "shape")
 
+    h: Column
+    s: Column
+    _others: Mapping[str, Column | None]
+
     def __init__(self, *, label: str, h: Column, s: Column, **others: Column | None) -> None:
         self.h = _fixed(h)
         self.s = _fixed(s)
