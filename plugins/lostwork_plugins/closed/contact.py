@@ -176,12 +176,18 @@ class Equilibration(Process):
         return Fluid(fractions, backend=a.backend, basis="mass", **a.options)
 
     def purpose(self, balance: Balance) -> Purpose | None:
-        """Exergy that one charge gains from the other, where it does."""
+        """Exergy that one charge gains from the other, where it does.
+
+        A charge that keeps its pressure pushes its surroundings back; the useful part of that work,
+        (p - p0) (V2 - V1), is counted with the charge that does it.
+        """
         if self.contact == "joined" or balance.exergy_basis != "dead state":
             return None
+        p0 = balance.surroundings.si.p
         rises = [
             after.exergy(balance.surroundings).magnitude
             - before.exergy(balance.surroundings).magnitude
+            + (after.state.si.p - p0) * (after.volume.magnitude - before.volume.magnitude)
             for before, after in zip(balance.before, balance.after, strict=True)
         ]
         gained, given = np.maximum(*rises), -np.minimum(*rises)

@@ -91,7 +91,7 @@ class QuasiStaticPath(Process):
         )
 
     def purpose(self, balance: Balance) -> Purpose | None:
-        """Useful work from exergy when the charge grows, exergy from useful work when it shrinks."""
+        """Useful work from exergy where the charge grows, exergy from work where it shrinks."""
         grows = np.asarray(balance.books.entries.volume_change) > 0.0
         if np.all(grows):
             return given_by_expansion(balance)

@@ -27,7 +27,7 @@ _MOST = 40
 _CONVERGED = 2e-13
 _ACCEPTED = 1e-10
 # Phases nearer to each other than this are one: the iteration has run into the trivial solution.
-_DISTINCT = 1e-5
+_DISTINCT = 1e-3
 _LARGEST = (1.5, 0.5, 0.08, 0.4)
 
 

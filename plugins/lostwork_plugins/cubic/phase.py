@@ -60,11 +60,26 @@ class Substance:
     def molar(self, T: Values, p: Values, x: Values, Z: Values, of: Attraction) -> Molar:
         """Volume, enthalpy and entropy of the phase with the root `Z`."""
         residual = self.cubic.residual(T, p, Z, of)
-        h = (x * self.ideal.enthalpy(T)).sum(-1) + residual.h
-        mixing = (x * np.log(np.where(x == 0.0, 1.0, x))).sum(-1)
-        s = (x * self.ideal.entropy(T)).sum(-1) + residual.s
-        s = s - R * (np.log(p / REFERENCE_PRESSURE) + mixing)
+        h = self._ideal_enthalpy(T, x) + residual.h
+        s = self._ideal_entropy(T, p, x) + residual.s
         return Molar(Z * R * T / p, h, s)
+
+    def named(
+        self, name: str, T: Values, p: Values, x: Values, Z: Values, of: Attraction
+    ) -> Values:
+        """Molar "h" or "s" alone, which a solver asks for many times."""
+        residual = self.cubic.residual(T, p, Z, of)
+        if name == "h":
+            return np.asarray(self._ideal_enthalpy(T, x) + residual.h)
+        return np.asarray(self._ideal_entropy(T, p, x) + residual.s)
+
+    def _ideal_enthalpy(self, T: Values, x: Values) -> Values:
+        return np.asarray((x * self.ideal.enthalpy(T)).sum(-1))
+
+    def _ideal_entropy(self, T: Values, p: Values, x: Values) -> Values:
+        mixing = (x * np.log(np.where(x == 0.0, 1.0, x))).sum(-1)
+        of_components = (x * self.ideal.entropy(T)).sum(-1)
+        return np.asarray(of_components - R * (np.log(p / REFERENCE_PRESSURE) + mixing))
 
     def heat_capacity(self, T: Vector, p: Vector, x: Vector, Z: Vector, of: Attraction) -> Vector:
         """Heat capacity at constant pressure, J/mol/K."""
