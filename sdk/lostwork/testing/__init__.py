@@ -8,19 +8,31 @@ from __future__ import annotations
 from lostwork.testing.strategies import (
     compositions,
     contents,
+    fractions,
+    given_states,
     pressures,
+    processes,
+    ratios,
+    rows_of_states,
     states,
     streams,
     surroundings,
     temperatures,
+    wet_states,
 )
 
 __all__ = [
     "compositions",
     "contents",
+    "fractions",
+    "given_states",
     "pressures",
+    "processes",
+    "ratios",
+    "rows_of_states",
     "states",
     "streams",
     "surroundings",
     "temperatures",
+    "wet_states",
 ]
