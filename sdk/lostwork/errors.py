@@ -41,6 +41,7 @@ __all__ = [
     "PropertyError",
     "QuantityError",
     "SecondLawViolation",
+    "ShapesDiffer",
     "StateNotFound",
     "TemperatureKind",
     "UnknownComponent",
@@ -139,6 +140,26 @@ class TemperatureKind(QuantityError):
     """A temperature difference was given for a temperature, or the other way round."""
 
     cause = "is the wrong kind of temperature"
+
+
+@dataclass(eq=False)
+class ShapesDiffer(LostworkError, ValueError):
+    """Arrays that meet in one call cannot be rows of one table."""
+
+    where: str
+    shapes: tuple[tuple[str, tuple[int, ...]], ...]
+
+    @property
+    def message(self) -> str:
+        told = ", ".join(f"{name} has {_rows(shape)}" for name, shape in self.shapes)
+        return _sentence(
+            f"{self.where}: lists of different lengths meet: {told}",
+            "Expected one length for all of them, or single values",
+        )
+
+
+def _rows(shape: tuple[int, ...]) -> str:
+    return str(shape[0]) if len(shape) == 1 else " x ".join(str(size) for size in shape)
 
 
 # --- components and compositions ----------------------------------------------------

@@ -2,26 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from typing import Annotated, Any, ClassVar
-
-from pydantic import GetCoreSchemaHandler
-from pydantic_core import CoreSchema, core_schema
+from typing import Any, ClassVar
 
 import lostwork as lw
 from lostwork_plugins.flow.step import FlowStep
 
 __all__ = ["AsMeasured"]
-
-
-@dataclass(frozen=True)
-class _AsItIs:
-    """Takes an instance as it is; Heat and Work are dataclasses, which pydantic would rebuild."""
-
-    def __get_pydantic_core_schema__(
-        self, source: type[Any], handler: GetCoreSchemaHandler
-    ) -> CoreSchema:
-        return core_schema.is_instance_schema(source)
 
 
 class AsMeasured(FlowStep):
@@ -43,9 +29,9 @@ class AsMeasured(FlowStep):
     """Streams that enter."""
     outflows: dict[str, lw.Stream]
     """Streams that leave, by the name of the outlet."""
-    heat: tuple[Annotated[lw.Heat, _AsItIs()], ...] = ()
+    heat: tuple[lw.Heat, ...] = ()
     """Heat, positive into the step, each with its boundary temperature."""
-    work: tuple[Annotated[lw.Work, _AsItIs()], ...] = ()
+    work: tuple[lw.Work, ...] = ()
     """Work, positive into the step."""
     closing: lw.Fraction | None = None
     """Error of the instruments, as a fraction within which flows and energies count as closed."""

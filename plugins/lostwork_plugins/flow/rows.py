@@ -57,7 +57,7 @@ class Refusals:
             }
             return reason.format(**at_row)
 
-        if mask.all():
+        if mask.size and mask.all():
             raise lw.ProcessError(process=self._process, reason=said(0, mask.shape))
         if mask.any():
             self._refused.append((mask, said))
@@ -72,7 +72,7 @@ class Refusals:
             places = np.broadcast_to(np.arange(mask.size).reshape(shape), wider)
             return reasons[int(np.ravel(places)[row])]
 
-        if mask.all():
+        if mask.size and mask.all():
             raise lw.ProcessError(process=self._process, reason=said(0, shape))
         if mask.any():
             self._refused.append((mask, said))

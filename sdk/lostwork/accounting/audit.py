@@ -11,6 +11,7 @@ from typing import Any, TypeAlias
 import numpy as np
 import pint
 
+from lostwork._shapes import common_shape
 from lostwork.accounting.balance import Balance
 from lostwork.accounting.entries import summed
 from lostwork.accounting.joints import Link, match
@@ -73,6 +74,8 @@ class Audit:
     AuditError
         No balance, two of one name, different surroundings, rates mixed with totals, or a stream
         that leaves or enters more than one step.
+    ShapesDiffer
+        Steps of different numbers of rows.
     """
 
     def __init__(
@@ -85,6 +88,7 @@ class Audit:
     ) -> None:
         self.balances: tuple[Balance, ...] = tuple(balances)
         self._require_one_frame()
+        common_shape("audit", ((b.name, b.books.sigma) for b in self.balances))
         self.surroundings = self.balances[0].surroundings
         self.per_time = self.balances[0].per_time
         within = _AGREEMENT if agreement is None else float(to_si(agreement, FRACTION, "agreement"))

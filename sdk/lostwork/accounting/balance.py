@@ -60,6 +60,8 @@ class Balance:
         More unknowns than equations, or rates mixed with totals.
     DatumMismatch
         States of different datums.
+    ShapesDiffer
+        Arrays of different lengths.
     """
 
     def __init__(
@@ -95,6 +97,7 @@ class Balance:
             work,
             (before,) if isinstance(before, Content) else before,
             (after,) if isinstance(after, Content) else after,
+            surroundings.si,
         )
         self.books: Books = keep_books(name, entries, surroundings.si.T, self.closing)
 

@@ -8,7 +8,8 @@ from typing import Any
 import numpy as np
 import pint
 
-from lostwork.errors import IllPosed, PropertyError, StateNotFound
+from lostwork._shapes import common_shape
+from lostwork.errors import PropertyError, StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.fluid import Fluid
 from lostwork.properties.state import DeadState
@@ -39,8 +40,8 @@ class Surroundings:
     ------
     QuantityError
         A value cannot be read.
-    IllPosed
-        Arrays of T0 and p0 do not broadcast.
+    ShapesDiffer
+        Arrays of T0 and p0 are of different lengths.
     """
 
     __slots__ = ("_dead_states", "_si")
@@ -50,14 +51,7 @@ class Surroundings:
 
     def __init__(self, *, T: Any, p: Any) -> None:
         si = SiSurroundings(_fixed(to_si(T, TEMPERATURE, "T0")), _fixed(to_si(p, PRESSURE, "p0")))
-        try:
-            np.broadcast_shapes(np.shape(si.T), np.shape(si.p))
-        except ValueError as error:
-            raise IllPosed(
-                balance="surroundings",
-                reason=f"T0 of shape {np.shape(si.T)} and p0 of shape {np.shape(si.p)} do not "
-                "broadcast to one sweep",
-            ) from error
+        common_shape("surroundings", (("T0", si.T), ("p0", si.p)))
         object.__setattr__(self, "_si", si)
         object.__setattr__(self, "_dead_states", {})
 

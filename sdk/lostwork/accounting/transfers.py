@@ -68,6 +68,10 @@ class Heat:
         """Boundary temperature, K."""
         return quantity(self.T, "K")
 
+    @classmethod
+    def __get_pydantic_core_schema__(cls, source: Any, handler: Any) -> Any:
+        return _taken_as_it_is(cls)
+
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Heat):
             return NotImplemented
@@ -122,6 +126,10 @@ class Work:
         """W or J; ``None`` while unknown."""
         return None if self.si is None else quantity(self.si, "W" if self.per_time else "J")
 
+    @classmethod
+    def __get_pydantic_core_schema__(cls, source: Any, handler: Any) -> Any:
+        return _taken_as_it_is(cls)
+
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Work):
             return NotImplemented
@@ -131,6 +139,13 @@ class Work:
 
     def __hash__(self) -> int:
         return hash(_identity(self.si, self.per_time, self.name))
+
+
+def _taken_as_it_is(kind: type[Any]) -> Any:
+    """Tell pydantic, which would build a dataclass anew from its fields, to take an instance."""
+    from pydantic_core import core_schema  # noqa: PLC0415  only for who uses pydantic
+
+    return core_schema.is_instance_schema(kind)
 
 
 def _identity(*fields: Any) -> tuple[Any, ...]:

@@ -8,9 +8,12 @@ from typing import TypeVar
 
 import numpy as np
 
+from lostwork._shapes import common_shape
 from lostwork.accounting.arithmetic import anywhere, size
 from lostwork.accounting.entries import Entries, summed
 from lostwork.accounting.flows import Content, Stream
+from lostwork.accounting.shapes import columns_of_balance
+from lostwork.accounting.surroundings import SiSurroundings
 from lostwork.accounting.transfers import Heat, Work
 from lostwork.errors import IllPosed
 from lostwork.properties.backend import Column
@@ -30,6 +33,7 @@ def collect(
     work: Sequence[Work],
     before: Sequence[Content],
     after: Sequence[Content],
+    site: SiSurroundings,
 ) -> Entries:
     """Gather the entries of a step and find the one rate that the mass balance leaves open.
 
@@ -38,6 +42,8 @@ def collect(
     IllPosed
         Not lists of what they should hold, rates mixed with totals, nothing known, or more than one
         stream without a rate.
+    ShapesDiffer
+        Arrays of different lengths.
     """
     entries = Entries(
         inflows=_listed(name, "inflows", inflows, Stream),
@@ -48,6 +54,7 @@ def collect(
         after=_listed(name, "after", after, Content),
         per_time=_kind(name, (*inflows, *outflows, *heat, *work), bool(before or after)),
     )
+    common_shape(name, columns_of_balance(entries, site))
     return _solve_rate(name, entries)
 
 

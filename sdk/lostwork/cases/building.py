@@ -12,7 +12,7 @@ from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.surroundings import Surroundings
 from lostwork.cases.energies import heat_of, work_of
 from lostwork.cases.layout import ChargeTable, FluidTable, Layout, StreamTable
-from lostwork.cases.problems import LENGTHS, Problems, is_shape_clash, nearest
+from lostwork.cases.problems import Problems, nearest
 from lostwork.cases.slots import Slot
 from lostwork.cases.wiring import Plan, Reference, Wiring, split_reference
 from lostwork.errors import LostworkError, OutOfLimits, PluginError, PropertyError
@@ -232,10 +232,6 @@ class _Building:
             self._problems.wrap(place, error, fields=given, field=" and ".join(given))
         except LostworkError as error:
             self._problems.wrap(place, error, field=" and ".join(given) or "T and p")
-        except ValueError as error:
-            if not is_shape_clash(error):
-                raise
-            self._problems.add(place, " and ".join(given), LENGTHS)
         return None
 
     def _absolute(self, value: Any, name: str) -> Any:
@@ -264,11 +260,6 @@ class _Building:
         except LostworkError as error:
             by_use = sorted(plan.values, key=lambda name: plan.slots[name].is_reference)
             self._problems.wrap(plan.table, error, fields=by_use)
-            return
-        except ValueError as error:
-            if not is_shape_clash(error):
-                raise
-            self._problems.add(plan.table, "", LENGTHS)
             return
         self._steps[plan.name] = step
 

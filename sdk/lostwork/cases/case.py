@@ -8,18 +8,16 @@ from pathlib import Path
 from types import MappingProxyType
 from typing import Any
 
-import numpy as np
-
 from lostwork.accounting.audit import Audit, Finding
 from lostwork.accounting.balance import Balance
 from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.surroundings import Surroundings
 from lostwork.cases.building import Built, Report, build, read_surroundings
 from lostwork.cases.layout import Layout, read_layout
-from lostwork.cases.problems import LENGTHS, Problems, is_shape_clash
+from lostwork.cases.problems import Problems
 from lostwork.cases.text import read_text, tables
 from lostwork.cases.wiring import Wiring, wire
-from lostwork.errors import CaseError, LostworkError
+from lostwork.errors import LostworkError
 from lostwork.plugins import plugins
 from lostwork.processes.contract import Process
 from lostwork.properties.fluid import Fluid
@@ -176,25 +174,10 @@ class Case:
                 _ = balance.verdict
             except LostworkError as error:
                 problems.wrap(f"steps.{name}", error)
-            except ValueError as error:
-                if not is_shape_clash(error):
-                    raise
-                problems.add(f"steps.{name}", "", LENGTHS)
             else:
                 balances.append(balance)
         problems.require_none()
-        self._require_one_length(balances)
         return balances
-
-    def _require_one_length(self, balances: list[Balance]) -> None:
-        shape: tuple[int, ...] = ()
-        for balance in balances:
-            try:
-                shape = np.broadcast_shapes(shape, balance.shape)
-            except ValueError as error:
-                text = f"has {balance.shape} rows where other steps have {shape}; {LENGTHS}"
-                found = ((f"steps.{balance.name}", "", text),)
-                raise CaseError(file=self.file, problems=found) from error
 
     @cached_property
     def _built(self) -> Built:

@@ -24,10 +24,7 @@ from lostwork.errors import (
     UnknownComponent,
 )
 
-__all__ = ["LENGTHS", "Problems", "is_shape_clash", "nearest"]
-
-LENGTHS = "lists of different lengths meet here; expected one length for every list of a case"
-"""Said where numpy refuses to bring two lists together."""
+__all__ = ["Problems", "nearest"]
 
 
 class Problems:
@@ -95,11 +92,6 @@ class Problems:
     def error(self) -> CaseError:
         """Give the error that lists what was found."""
         return CaseError(file=self.file, problems=tuple(self._found))
-
-
-def is_shape_clash(error: ValueError) -> bool:
-    """Whether numpy refused lists of different lengths; any other ValueError is a bug."""
-    return "broadcast" in str(error)
 
 
 def nearest(name: str, known: Iterable[str]) -> str:

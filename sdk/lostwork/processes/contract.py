@@ -27,9 +27,11 @@ from typing import Any, ClassVar
 import pint
 from pydantic import BaseModel, ConfigDict, ValidationError
 
+from lostwork._shapes import common_shape
 from lostwork.accounting.balance import Balance
 from lostwork.accounting.flows import Content, Stream
 from lostwork.accounting.losses import Purpose
+from lostwork.accounting.shapes import columns_of
 from lostwork.accounting.surroundings import Surroundings
 from lostwork.accounting.transfers import Heat, Work
 from lostwork.errors import FieldError, ProcessError
@@ -117,7 +119,16 @@ class Process(BaseModel, ABC):
 
     @cached_property
     def solution(self) -> Solution:
-        """What `solve` found; solved once."""
+        """What `solve` found; solved once.
+
+        Raises
+        ------
+        ShapesDiffer
+            Arrays in two fields are of different lengths.
+        ProcessError
+            The step cannot be run.
+        """
+        common_shape(self.label, self._columns())
         return self.solve()
 
     @property
@@ -192,14 +203,29 @@ class Process(BaseModel, ABC):
         return f"{self.name}.{outlet}" if self.name else ""
 
     def _matter(self, kind: type[Any]) -> Iterator[tuple[str, Any]]:
-        for field_name in type(self).model_fields:
-            value = getattr(self, field_name)
-            if isinstance(value, kind):
-                yield field_name, value
-            elif isinstance(value, tuple | list):
-                for place, entry in enumerate(value):
-                    if isinstance(entry, kind):
-                        yield f"{field_name} {place + 1}", entry
+        return ((name, entry) for name, entry in self._entries() if isinstance(entry, kind))
+
+    def _columns(self) -> Iterator[tuple[str, object]]:
+        for name, entry in self._entries():
+            parts = entry if isinstance(entry, Mapping) else {"": entry}
+            for key, part in parts.items():
+                yield from _columns(f"{name} {key}".rstrip(), part)
+
+    def _entries(self) -> Iterator[tuple[str, Any]]:
+        """Fields by name, those of several entries one by one."""
+        for name in type(self).model_fields:
+            value = getattr(self, name)
+            if isinstance(value, tuple | list):
+                yield from ((f"{name} {place}", part) for place, part in enumerate(value, start=1))
+            else:
+                yield name, value
+
+
+def _columns(name: str, entry: Any) -> Iterator[tuple[str, object]]:
+    if isinstance(entry, Stream | Content | Heat | Work):
+        yield from columns_of(name, entry)
+    elif isinstance(entry, pint.Quantity):
+        yield name, entry.magnitude
 
 
 def _problem(kind: type[Process], entry: Any) -> tuple[str, str]:

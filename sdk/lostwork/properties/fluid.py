@@ -12,6 +12,7 @@ import numpy as np
 import numpy.typing as npt
 import pint
 
+from lostwork._shapes import common_shape
 from lostwork.errors import OutOfLimits, PairRefused, PluginFailed, StateNotFound
 from lostwork.plugins import plugins
 from lostwork.properties.backend import (
@@ -192,7 +193,9 @@ class Fluid:
         Raises
         ------
         PairRefused
-            The two properties do not fix a state, or their shapes do not broadcast.
+            The two properties do not fix a state.
+        ShapesDiffer
+            Two arrays of different lengths.
         StateNotFound
             A single point has no state.
         """
@@ -203,7 +206,7 @@ class Fluid:
             x, y = self._unshifted(pair[0], x), self._unshifted(pair[1], y)
         if np.ndim(x) == 0 and np.ndim(y) == 0:
             return self._point(pair, float(x), float(y))
-        shape = _common_shape(pair, x, y)
+        shape = common_shape(self.name, ((pair[0], x), (pair[1], y)))
         x, y = np.broadcast_to(x, shape), np.broadcast_to(y, shape)
         columns = solve_pair(
             self._model,
@@ -334,17 +337,6 @@ class Fluid:
         forms = _MOLAR_FORMS[name]
         number, dimension = to_si_any(value, forms, name)
         return number / self.molar_mass_si if dimension is forms[1] else number
-
-
-def _common_shape(pair: Pair, x: Column, y: Column) -> tuple[int, ...]:
-    try:
-        return np.broadcast_shapes(np.shape(x), np.shape(y))
-    except ValueError as error:
-        raise PairRefused(
-            given=pair,
-            reason=f"an array of shape {np.shape(x)} and one of {np.shape(y)} do not broadcast",
-            instead="Give arrays of one shape, or one of them as a single value",
-        ) from error
 
 
 def _checked_quality(quality: Column) -> Column:

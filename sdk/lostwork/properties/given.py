@@ -8,7 +8,8 @@ from typing import Any
 
 import numpy as np
 
-from lostwork.errors import IllPosed, StateNotFound
+from lostwork._shapes import common_shape
+from lostwork.errors import StateNotFound
 from lostwork.properties.backend import Column
 from lostwork.properties.datum import Datum
 from lostwork.quantities import (
@@ -41,8 +42,8 @@ class GivenState:
     ------
     QuantityError
         A value cannot be read.
-    IllPosed
-        The arrays do not broadcast to one shape.
+    ShapesDiffer
+        The arrays are of different lengths.
     """
 
     __slots__ = ("_datum", "_label", "_si")
@@ -150,7 +151,7 @@ class _GivenSi:
         self.s = _fixed(s)
         self._others = {name: _fixed(value) for name, value in others.items()}
         self._label = label
-        self.shape = _shape_of(label, {"h": h, "s": s, **others})
+        self.shape = common_shape(label, [("h", h), ("s", s), *others.items()])
 
     def __reduce__(self) -> tuple[Any, ...]:
         return _restored_given_si, (self._label, self.h, self.s, self._others)
@@ -186,17 +187,6 @@ def _fixed(value: Any) -> Any:
         value = value.copy()
         value.flags.writeable = False
     return value
-
-
-def _shape_of(label: str, values: Mapping[str, Column | None]) -> tuple[int, ...]:
-    shapes = {name: v.shape for name, v in values.items() if isinstance(v, np.ndarray)}
-    try:
-        return np.broadcast_shapes(*shapes.values()) if shapes else ()
-    except ValueError as error:
-        told = ", ".join(f"{name} {shape}" for name, shape in shapes.items())
-        raise IllPosed(
-            balance=label, reason=f"its arrays do not broadcast to one shape: {told}"
-        ) from error
 
 
 def _restored_given_si(
