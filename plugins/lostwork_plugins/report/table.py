@@ -145,7 +145,8 @@ def _verdict(verdict: lw.Verdict) -> str:
 
 
 def _differ(count: int) -> str:
-    return "1 shared stream differs" if count == 1 else f"{count} shared streams differ"
+    which = "1 shared stream differs" if count == 1 else f"{count} shared streams differ"
+    return f"{which} between the step it leaves and the step it enters"
 
 
 def _by_mechanism(audit: lw.Audit, scale: Scale) -> list[RenderableType]:
@@ -195,9 +196,9 @@ def _judgement(audit: lw.Audit) -> list[Text]:
     count = len(audit.balances)
     steps = "The one step" if count == 1 else f"The {count} steps"
     if unfit or apart:
-        closing = f"!! {len(unfit)} of {count} steps cannot stand as described"
-        closing += f"; {_differ(len(apart))}." if apart else "."
-        lines.append(paragraph(closing, "bold red"))
+        said = [f"{len(unfit)} of {count} steps cannot stand as described"] if unfit else []
+        said += [_differ(len(apart))] if apart else []
+        lines.append(paragraph(f"!! {'; '.join(said)}.", "bold red"))
     elif undecided:
         lines.append(
             paragraph(f"No step is impossible, {len(undecided)} of {count} are undecided.")

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
+from types import MappingProxyType
 from typing import Any, TypeAlias
 
 import numpy as np
@@ -16,7 +17,7 @@ from lostwork.accounting.balance import Balance
 from lostwork.accounting.entries import summed
 from lostwork.accounting.joints import Link, match
 from lostwork.accounting.verdict import Status, Verdict
-from lostwork.errors import AuditError, DatumMismatch, InternalDisagreement
+from lostwork.errors import AuditError, DatumMismatch, InternalDisagreement, OutOfLimits
 from lostwork.plugins import plugins
 from lostwork.properties.backend import Column
 from lostwork.quantities import FRACTION, quantity, to_si
@@ -63,7 +64,11 @@ class Audit:
         One per step, names all different.
     agreement
         Fraction within which the two ends of a shared stream must agree; state it where a stream
-        is both measured and computed ("1 %").
+        is both measured and computed ("1 %"), or closes a loop.  Enthalpies are compared on the
+        scale of R T, entropies on that of R, which no choice of zero can move.
+    joined
+        Names of streams out, each with the name by which the same stream enters: where a loop was
+        cut and its state stated, this closes it.
     checks
         Whether the checks of installed plugins are run.
     remarks
@@ -74,6 +79,8 @@ class Audit:
     AuditError
         No balance, two of one name, different surroundings, rates mixed with totals, or a stream
         that leaves or enters more than one step.
+    OutOfLimits
+        `agreement` is no fraction.
     ShapesDiffer
         Steps of different numbers of rows.
     """
@@ -83,6 +90,7 @@ class Audit:
         balances: Iterable[Balance],
         *,
         agreement: Any = None,
+        joined: Mapping[str, str] = MappingProxyType({}),
         checks: bool = True,
         remarks: Iterable[Finding] = (),
     ) -> None:
@@ -91,9 +99,11 @@ class Audit:
         common_shape("audit", ((b.name, b.books.sigma) for b in self.balances))
         self.surroundings = self.balances[0].surroundings
         self.per_time = self.balances[0].per_time
-        within = _AGREEMENT if agreement is None else float(to_si(agreement, FRACTION, "agreement"))
+        within = _fraction(agreement)
         self._agreement = within
-        self._streams = match([(b.name, b.inflows, b.outflows) for b in self.balances], within)
+        self._streams = match(
+            [(b.name, b.inflows, b.outflows) for b in self.balances], within, joined
+        )
         self._contents = match([(b.name, b.before, b.after) for b in self.balances], within)
         self.links: tuple[Link, ...] = (*self._streams.links, *self._contents.links)
         found = _run_checks(self.balances) if checks else ()
@@ -240,6 +250,17 @@ class Audit:
                     first=f"the parts give {self._sigma}",
                     second=f"the balance around them {whole.books.sigma}",
                 )
+
+
+def _fraction(agreement: Any) -> float:
+    if agreement is None:
+        return _AGREEMENT
+    within = to_si(agreement, FRACTION, "agreement")
+    if isinstance(within, np.ndarray) or not 0.0 <= within < 1.0:
+        raise OutOfLimits(
+            fluid="agreement", reason=f"one fraction from 0 to below 1; got {agreement}"
+        )
+    return within
 
 
 def _run_checks(balances: Sequence[Balance]) -> tuple[Finding, ...]:

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from types import MappingProxyType
 from typing import Generic, TypeVar
 
 import numpy as np
@@ -45,7 +46,9 @@ class Joints(Generic[Item]):
 
 
 def match(
-    steps: list[tuple[str, Sequence[Item], Sequence[Item]]], agreement: float
+    steps: list[tuple[str, Sequence[Item], Sequence[Item]]],
+    agreement: float,
+    joined: Mapping[str, str] = MappingProxyType({}),
 ) -> Joints[Item]:
     """Match what leaves one step with what enters another, by name or by identity.
 
@@ -55,14 +58,20 @@ def match(
         Name, what enters, what leaves.
     agreement
         Fraction within which both ends of a link must agree.
+    joined
+        Names under which things leave, each with the name under which it enters.
 
     Raises
     ------
     AuditError
-        One thing leaves, or enters, two steps.
+        One thing leaves, or enters, two steps; or nothing leaves, or enters, under a joined name.
     """
-    entering = _by_key([(name, item) for name, ins, _ in steps for item in ins], "enters")
-    leaving = _by_key([(name, item) for name, _, outs in steps for item in outs], "leaves")
+    entering = _by_key([(name, item) for name, ins, _ in steps for item in ins], "enters", {})
+    leaving = _by_key([(name, item) for name, _, outs in steps for item in outs], "leaves", joined)
+    for name in joined.values():
+        for verb, found in (("leaves", leaving), ("enters", entering)):
+            if name not in found:
+                raise AuditError(reason=f"{name!r} is joined, and nothing {verb} a step by it")
     links = tuple(
         Link(
             name=item.name or item.state.label,
@@ -81,10 +90,12 @@ def match(
     )
 
 
-def _by_key(items: list[tuple[str, Item]], verb: str) -> dict[object, tuple[str, Item]]:
+def _by_key(
+    items: list[tuple[str, Item]], verb: str, joined: Mapping[str, str]
+) -> dict[object, tuple[str, Item]]:
     found: dict[object, tuple[str, Item]] = {}
     for step, item in items:
-        key: object = item.name or id(item)
+        key: object = joined.get(item.name, item.name) or id(item)
         if key in found:
             name = item.name or item.state.label
             raise AuditError(
@@ -104,13 +115,13 @@ def _mismatch(leaves: Item, enters: Item, agreement: float) -> str:
         return f"datum is {a.datum} where it leaves and {b.datum} where it enters"
     entropy = R / _molar_mass(a)
     scales = (
-        ("mass", leaves.mass_si, enters.mass_si, np.abs(leaves.mass_si)),
-        ("h", a.si.h, b.si.h, entropy * _temperature(a)),
-        ("s", a.si.s, b.si.s, entropy),
+        ("mass", "kg", leaves.mass_si, enters.mass_si, np.abs(leaves.mass_si)),
+        ("h", "J/kg", a.si.h, b.si.h, entropy * _temperature(a)),
+        ("s", "J/kg/K", a.si.s, b.si.s, entropy),
     )
     return "; ".join(
-        f"{name} is {_shown(x)} where it leaves and {_shown(y)} where it enters"
-        for name, x, y, scale in scales
+        _shown(name, unit, np.asarray(y) - x)
+        for name, unit, x, y, scale in scales
         if np.any(np.abs(np.asarray(x) - y) > agreement * np.asarray(scale))
     )
 
@@ -132,6 +143,9 @@ def _temperature(state: Matter) -> Column:
     return state.si.T if isinstance(state, State) else _TYPICAL_TEMPERATURE
 
 
-def _shown(value: Column) -> str:
-    array = np.asarray(value)
-    return f"{float(array):.6g}" if not array.shape else f"an array {array.shape}"
+def _shown(name: str, unit: str, excess: Column) -> str:
+    values = np.ravel(excess)
+    largest = float(values[np.nanargmax(np.abs(values))])
+    reach = "" if values.size == 1 else "up to "
+    word = "more" if largest > 0.0 else "less"
+    return f"{name} is {reach}{abs(largest):.4g} {unit} {word} where it enters than where it leaves"

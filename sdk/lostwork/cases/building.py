@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import Any, TypeAlias
 
@@ -38,6 +38,8 @@ class Built:
     streams: Mapping[str, Stream] = field(default_factory=dict)
     charges: Mapping[str, Content] = field(default_factory=dict)
     steps: Mapping[str, Process] = field(default_factory=dict)
+    joined: Mapping[str, str] = field(default_factory=dict)
+    """Names of outlets, each with the name of the stated stream that it closes a loop with."""
 
 
 def read_surroundings(layout: Layout, file: str) -> Surroundings:
@@ -124,8 +126,9 @@ class _Building:
             self._tell(done, total, f"step {plan.name}")
             self._solve_step(plan)
             done += 1
+        joined = dict(self._loops())
         self._problems.require_none()
-        return Built(self._fluids, self._streams, self._charges, self._steps)
+        return Built(self._fluids, self._streams, self._charges, self._steps, joined)
 
     def _tell(self, done: int, total: int, what: str) -> None:
         if self._report is not None:
@@ -275,6 +278,15 @@ class _Building:
             return self._absolute(value, slot.name)
         return value
 
+    def _loops(self) -> Iterator[tuple[str, str]]:
+        for name, table in self._layout.streams.items():
+            reference = split_reference(table.closes or "")
+            if reference.owner in self._steps:
+                place = (f"streams.{name}", "closes")
+                outlet = self._picked(place, reference, self._steps[reference.owner].outlets)
+                if outlet is not None:
+                    yield outlet.name, name
+
     def _found(self, plan: Plan, slot: Slot, reference: Reference) -> Any:
         owner = reference.owner
         if owner in self._layout.streams:
@@ -284,18 +296,23 @@ class _Building:
         step = self._steps.get(owner)
         if step is None:
             return None
-        offered = self._offered(step, slot)
+        return self._picked((plan.table, slot.name), reference, self._offered(step, slot))
+
+    def _picked(
+        self, place: tuple[str, str], reference: Reference, offered: Mapping[str, Any]
+    ) -> Any:
+        """Give what a reference means of all that a step offers; ``None`` where it is not there."""
         if reference.part in offered:
             return offered[reference.part]
         if not reference.part and len(offered) == 1:
             return next(iter(offered.values()))
-        full = [f"{owner}.{part}" for part in offered]
+        full = [f"{reference.owner}.{part}" for part in offered]
         text = (
             f"{str(reference)!r} is no single outlet; expected one of {', '.join(full) or 'none'}"
             if not reference.part
             else f"{str(reference)!r} is not there; {nearest(str(reference), full)}"
         )
-        self._problems.add(plan.table, slot.name, text)
+        self._problems.add(*place, text)
         return None
 
     @staticmethod

@@ -17,7 +17,7 @@ from lostwork.cases.layout import Layout, read_layout
 from lostwork.cases.problems import Problems
 from lostwork.cases.text import read_text, tables
 from lostwork.cases.wiring import Wiring, wire
-from lostwork.errors import LostworkError
+from lostwork.errors import LostworkError, OutOfLimits, QuantityError
 from lostwork.plugins import plugins
 from lostwork.processes.contract import Process
 from lostwork.properties.fluid import Fluid
@@ -158,10 +158,18 @@ class Case:
         if "_built" not in self.__dict__:
             self.__dict__["_built"] = self._build(progress)
         balances = self._balances()
+        problems = Problems(self.file)
         try:
-            return Audit(balances, remarks=self._remarks())
+            return Audit(
+                balances,
+                agreement=self._layout.case.agreement,
+                joined=self._built.joined,
+                remarks=self._remarks(),
+            )
+        except (QuantityError, OutOfLimits) as error:
+            problems.wrap("case", error, fields=("agreement",))
+            raise problems.error() from error
         except LostworkError as error:
-            problems = Problems(self.file)
             problems.wrap("steps", error)
             raise problems.error() from error
 

@@ -157,6 +157,8 @@ class CaseTable(_Table):
     """Of every fluid that names none."""
     closing: Given = None
     """Error of the instruments, for every step that takes one and states none."""
+    agreement: Given = None
+    """Fraction within which a stated stream and the outlet that it closes a loop with agree."""
 
 
 class SurroundingsTable(_Table):
@@ -205,7 +207,13 @@ class _MatterTable(_Table):
 
 
 class StreamTable(_MatterTable):
-    """``[streams.NAME]``: a fluid, two properties, and a rate (or a mass, for a batch)."""
+    """``[streams.NAME]``: a fluid, two properties, and a rate (or a mass, for a batch).
+
+    A loop is cut at a stream whose state is stated; `closes` names the outlet that is this stream
+    come back, and the audit compares the two.
+    """
+
+    closes: Line | None = None
 
     rate: Given = None
     mass: Given = None

@@ -75,11 +75,30 @@ def wire(layout: Layout, file: str) -> Wiring:
     problems.require_none()
     order = _order(plans, file)
     taken = {str(reference) for plan in plans.values() for _, reference in references(plan)}
+    _check_loops(layout, taken, problems)
+    problems.require_none()
     given = [*layout.streams, *layout.charges]
     return Wiring(
         plans=tuple(plans[name] for name in order),
         unused=tuple(name for name in given if name not in taken),
     )
+
+
+def _check_loops(layout: Layout, taken: set[str], problems: Problems) -> None:
+    """A stream that closes a loop enters a step, and what it closes enters none."""
+    for name, table in layout.streams.items():
+        if table.closes is None:
+            continue
+        reference = split_reference(table.closes)
+        if reference.owner not in layout.steps:
+            text = f"{table.closes!r} is no step; {nearest(table.closes, layout.steps)}"
+        elif str(reference) in taken:
+            text = f"{table.closes!r} enters a step already; expected an outlet that enters none"
+        elif name not in taken:
+            text = "this stream enters no step; expected one that takes what comes back"
+        else:
+            continue
+        problems.add(f"streams.{name}", "closes", text)
 
 
 def references(plan: Plan) -> Iterator[tuple[str, Reference]]:

@@ -148,6 +148,43 @@ outflows = {away = "out"}
     assert lw.Case.parse(tolerant + own).audit().status is lw.Status.unbalanced
 
 
+LOOP = """
+[steps.blower]
+type = "compression"
+inlet = "feed"
+p_out = "9.5 bar"
+isentropic_efficiency = "70 %"
+[steps.cooler]
+type = "cooling"
+inlet = "blower"
+T_out = "20 degC"
+pressure_drop = "0.5 bar"
+at = "15 degC"
+"""
+
+
+def test_a_loop_that_comes_back_to_its_stated_state_closes():
+    case = HEAD.replace('rate = "2 kg/s"', 'rate = "2 kg/s"\ncloses = "cooler"')
+    audit = lw.Case.parse(case + LOOP).audit()
+    assert audit.acceptable
+    assert ("cooler", "blower") in {(link.leaves, link.enters) for link in audit.links}
+    assert not audit.whole.inflows
+    assert not audit.whole.outflows
+    assert audit.whole.heat_total.magnitude == pytest.approx(-audit.whole.work_total.magnitude)
+
+
+def test_a_loop_that_comes_back_warmer_than_stated_is_told_and_within_the_agreement_borne():
+    case = HEAD.replace('rate = "2 kg/s"', 'rate = "2 kg/s"\ncloses = "cooler.outlet"')
+    warm = LOOP.replace('T_out = "20 degC"', 'T_out = "20.5 degC"')
+    audit = lw.Case.parse(case + warm).audit()
+    assert audit.status is lw.Status.unbalanced
+    (told,) = [link.mismatch for link in audit.links if link.mismatch]
+    assert "h is 50" in told
+    assert "J/kg less where it enters than where it leaves" in told
+    borne = case.replace("[case]", '[case]\nagreement = "1 %"')
+    assert lw.Case.parse(borne + warm).audit().acceptable
+
+
 def test_a_stream_that_enters_no_step_is_remarked():
     findings = lw.Case.parse(HEAD + VALVE + TANK).audit().findings
     assert any("'tank' is stated and enters no step" in finding.text for finding in findings)

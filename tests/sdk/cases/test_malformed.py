@@ -373,6 +373,28 @@ FILES = {
         with_measured('work = ["30 bar"]'),
         [COMPRESSOR, "work.amount:", "30 bar", "expected a power"],
     ),
+    "a loop closed by a step that is not there": (
+        suction('rate = "2 kg/s"', 'rate = "2 kg/s"\ncloses = "valv"'),
+        [SUCTION, "closes:", "'valv' is no step", "perhaps 'valve' is meant"],
+    ),
+    "a loop closed by an outlet that is not there": (
+        suction('rate = "2 kg/s"', 'rate = "2 kg/s"\ncloses = "valve.drain"'),
+        [SUCTION, "closes:", "'valve.drain' is not there", "valve.outlet"],
+    ),
+    "a loop closed by an outlet that goes elsewhere": (
+        suction('rate = "2 kg/s"', 'rate = "2 kg/s"\ncloses = "compressor"'),
+        [SUCTION, "closes:", "enters a step already", "expected an outlet that enters none"],
+    ),
+    "a loop closed by a stream that nothing takes": (
+        SOUND
+        + '[streams.idle]\nfluid = "air"\nT = "1 degC"\np = "5 bar"\nrate = "1 kg/s"\n'
+        + 'closes = "valve"\n',
+        ["[streams.idle]", "closes:", "enters no step", "expected one that takes"],
+    ),
+    "an agreement of more than all": (
+        altered('backend = "ideal-gas"', 'backend = "ideal-gas"\nagreement = "120 %"'),
+        ["[case]", "agreement:", "one fraction from 0 to below 1", "120 %"],
+    ),
     "two unknowns": (
         with_measured('work = ["unknown"]\nheat = [{amount = "unknown", at = "15 degC"}]'),
         [COMPRESSOR, "more than one heat or work is unknown"],
