@@ -206,12 +206,18 @@ class Case:
             Finding(step="", check="case", text=f"{name!r} is stated and enters no step")
             for name in self._wiring.unused
         ]
-        notes = [
-            Finding(step="", check=f"fluid {name}", text=note)
-            for name, fluid in self._built.fluids.items()
-            for note in fluid.notes
+        return unused + self._notes()
+
+    def _notes(self) -> list[Finding]:
+        """What the backends say of their fluids, each remark once for all it concerns."""
+        concerned: dict[str, list[str]] = {}
+        for name, fluid in self._built.fluids.items():
+            for note in fluid.notes:
+                concerned.setdefault(note, []).append(name)
+        return [
+            Finding(step="", check=f"fluid {', '.join(names)}", text=note)
+            for note, names in concerned.items()
         ]
-        return unused + notes
 
     def __repr__(self) -> str:
         backend = f", backend={self._backend!r}" if self._backend else ""

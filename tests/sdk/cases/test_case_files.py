@@ -275,3 +275,12 @@ def test_a_chain_of_a_thousand_steps_is_solved():
     whole = audit.whole
     assert whole is not None
     assert whole.work_lost_si == pytest.approx(audit.work_lost_si, rel=1e-9)
+
+
+def test_what_a_backend_remarks_of_two_fluids_alike_is_said_once():
+    text = HEAD.replace('"ideal-gas"', '"cubic"').replace(
+        "[streams.feed]", '[fluids.blast]\ncomponents = "air"\n[streams.feed]'
+    )
+    findings = lw.Case.parse(text + VALVE).audit().findings
+    solids = [finding for finding in findings if "Solids" in finding.text]
+    assert [finding.check for finding in solids] == ["fluid air, blast"]
