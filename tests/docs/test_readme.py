@@ -1,4 +1,4 @@
-"""Every command and every block of code in the README runs as printed."""
+"""Every command and block of code in the README and in DEVELOPERS.md runs as printed."""
 
 from __future__ import annotations
 
@@ -13,10 +13,13 @@ import pytest
 
 ROOT = Path(__file__).resolve().parents[2]
 README = (ROOT / "README.md").read_text(encoding="utf-8")
-BLOCKS = re.findall(
-    r"(<!-- (?P<mark>[a-z ]+) -->\n)?```(?P<language>\w+)\n(?P<text>.*?)```", README, re.S
-)
+DEVELOPERS = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+_BLOCK = re.compile(r"(<!-- (?P<mark>[a-z ]+) -->\n)?```(?P<language>\w+)\n(?P<text>.*?)```", re.S)
+BLOCKS = _BLOCK.findall(README)
 PYTHON = [text for _, _, language, text in BLOCKS if language == "python"]
+FOR_CONTRIBUTORS = [
+    text for _, _, language, text in _BLOCK.findall(DEVELOPERS) if language == "python"
+]
 COMMANDS = [
     line
     for _, mark, language, text in BLOCKS
@@ -37,6 +40,18 @@ def test_the_readme_states_the_job_in_its_first_paragraph() -> None:
     assert "lost" in README.split("\n\n")[1]
 
 
+def test_what_the_page_for_contributors_points_at_is_there() -> None:
+    paths = re.findall(r"`((?:sdk|plugins|tests|examples|\.ci)/[\w./]+)`", DEVELOPERS)
+    assert len(paths) > 8
+    assert [path for path in paths if not (ROOT / path).exists()] == []
+    headings = {
+        line.lstrip("# ").lower().replace(" ", "-")
+        for line in DEVELOPERS.splitlines()
+        if line.startswith("## ")
+    }
+    assert set(re.findall(r"\]\(#([\w-]+)\)", DEVELOPERS)) == headings
+
+
 def test_no_block_of_the_readme_escapes_these_tests() -> None:
     assert (
         len(PYTHON)
@@ -47,7 +62,7 @@ def test_no_block_of_the_readme_escapes_these_tests() -> None:
     assert set(MARKED) == {"main command", "test command"}
 
 
-@pytest.mark.parametrize("text", PYTHON)
+@pytest.mark.parametrize("text", [*PYTHON, *FOR_CONTRIBUTORS])
 def test_a_python_block_runs_as_printed(text: str) -> None:
     done = _run([sys.executable, "-c", text], ROOT)
     assert done.returncode == 0, done.stderr
