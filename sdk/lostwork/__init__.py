@@ -166,6 +166,11 @@ if TYPE_CHECKING:
     from lostwork.properties.given import (
         GivenState,
     )
+    from lostwork.properties.noise import (
+        Noise,
+        NoiseResidual,
+        Region,
+    )
     from lostwork.properties.rootfinding import (
         bracketed_root,
     )
@@ -251,6 +256,8 @@ __all__ = [
     "MassRate",
     "MissingExtra",
     "MissingUnit",
+    "Noise",
+    "NoiseResidual",
     "NotAbsolute",
     "NotFinite",
     "OutOfLimits",
@@ -277,6 +284,7 @@ __all__ = [
     "R",
     "Ranked",
     "Ratio",
+    "Region",
     "SecondLawViolation",
     "ShapesDiffer",
     "Shortfall",
@@ -340,8 +348,8 @@ _HOMES = {
         "Presentation",
     ),
     "lostwork.accounting.flows": (
-        "GRAVITY",
         "Content",
+        "GRAVITY",
         "Stream",
     ),
     "lostwork.accounting.joints": (
@@ -405,10 +413,10 @@ _HOMES = {
         "WrongDimension",
     ),
     "lostwork.plugins": (
-        "PLUGIN_API",
         "BackendDescriptor",
         "CheckDescriptor",
         "ExporterDescriptor",
+        "PLUGIN_API",
         "ProcessDescriptor",
         "hookimpl",
         "plugins",
@@ -440,19 +448,19 @@ _HOMES = {
         "Volume",
     ),
     "lostwork.properties.backend": (
-        "DETERMINING_PAIRS",
-        "REFERENCE_PRESSURE",
-        "REFERENCE_TEMPERATURE",
         "Backend",
         "Column",
         "Columns",
         "Critical",
+        "DETERMINING_PAIRS",
         "FluidSpec",
         "Limits",
         "Pair",
         "PhaseSplit",
         "PropertyModel",
         "R",
+        "REFERENCE_PRESSURE",
+        "REFERENCE_TEMPERATURE",
     ),
     "lostwork.properties.components": (
         "Component",
@@ -461,19 +469,24 @@ _HOMES = {
     "lostwork.properties.datum": ("Datum",),
     "lostwork.properties.fluid": ("Fluid",),
     "lostwork.properties.given": ("GivenState",),
+    "lostwork.properties.noise": (
+        "Noise",
+        "NoiseResidual",
+        "Region",
+    ),
     "lostwork.properties.rootfinding": ("bracketed_root",),
     "lostwork.properties.state": (
         "Change",
         "State",
     ),
     "lostwork.quantities": (
+        "Dimension",
         "FRACTION",
         "MOLAR_ENTROPY",
         "MOLAR_MASS",
         "PRESSURE",
         "SPECIFIC_ENTROPY",
         "TEMPERATURE",
-        "Dimension",
         "in_unit",
         "quantity",
         "to_si",

@@ -29,6 +29,8 @@ from lostwork.properties.backend import (
 from lostwork.properties.components import Component
 from lostwork.properties.compositions import checked_spec, fluid_spec
 from lostwork.properties.datum import Datum, Shift, shift_to_common
+from lostwork.properties.noise import Noise, Region
+from lostwork.properties.noise_measurement import measured
 from lostwork.properties.pairs import ordered_pair, solve_pair
 from lostwork.properties.state import SiState, State
 from lostwork.quantities import (
@@ -85,8 +87,9 @@ class Fluid:
         The backend has no model of this fluid, or no such option.
     """
 
-    __slots__ = ("_identity", "_model", "_shift", "backend", "options", "spec")
+    __slots__ = ("_floor", "_identity", "_model", "_shift", "backend", "options", "spec")
 
+    _floor: float
     _identity: tuple[Hashable, ...]
     _model: PropertyModel
     _shift: Shift
@@ -116,6 +119,7 @@ class Fluid:
         put(self, "backend", backend)
         put(self, "options", MappingProxyType(dict(options)))
         put(self, "_identity", (backend, spec, _frozen(options)))
+        put(self, "_floor", 0.0)
         model, shift = _opened(source, backend, spec, options)
         put(self, "_model", model)
         put(self, "_shift", shift)
@@ -232,11 +236,43 @@ class Fluid:
             Not one fraction for each component, a negative one, or a sum other than 1.
         """
         spec = checked_spec(self.spec.components, mole_fractions)
-        return Fluid(spec, backend=self.backend, **self.options)
+        return _reopen(spec, self.backend, dict(self.options), self._floor)
+
+    def with_noise(self, noise: Noise) -> Fluid:
+        """Give the same fluid with the measured noise as the least tolerance of its verdicts.
+
+        For a backend that states less than `noise` found.
+        """
+        return _reopen(self.spec, self.backend, dict(self.options), noise.worst.entropy)
 
     def noise_at(self, T: Column, p: Column) -> Column:
-        """Inconsistency of the backend's entropy at T (K) and p (Pa), J/kg/K."""
-        return self._model.noise_at(T, p)
+        """Inconsistency of the backend's entropy at T (K) and p (Pa), J/kg/K.
+
+        As its model states it, or as measured where `with_noise` was told of more.
+        """
+        stated = self._model.noise_at(T, p)
+        return np.maximum(stated, self._floor) if self._floor else stated
+
+    def noise(self, region: Region | None = None, *, cells: int = 8) -> Noise:
+        """Measure how far the backend contradicts itself: the entropy that does not close.
+
+        h, v and s are followed along isobars and isotherms, by (p, h) and (p, s), around closed
+        loops and across saturation (dh = T ds + v dp).  Kept by fluid and region.  A verdict never
+        measures; it relies on what the model states, which this puts to the test.
+
+        Parameters
+        ----------
+        region
+            Where; the whole range of the model from 1 kPa up when left out.
+        cells
+            Into how many cells the region is divided each way.
+
+        Raises
+        ------
+        OutOfLimits
+            No state could be followed in the region.
+        """
+        return measured(self._identity, self.name, self._model, region, cells, pure=self.is_pure)
 
     @property
     def critical_point(self) -> Critical | None:
@@ -294,7 +330,7 @@ class Fluid:
         return hash(self._identity)
 
     def __reduce__(self) -> tuple[Any, ...]:
-        return _reopen, (self.spec, self.backend, dict(self.options))
+        return _reopen, (self.spec, self.backend, dict(self.options), self._floor)
 
     def __repr__(self) -> str:
         options = "".join(f", {name}={value!r}" for name, value in self.options.items())
@@ -396,5 +432,9 @@ def _frozen(value: Any) -> Hashable:
     return value if isinstance(value, str | int | float | bool | type(None)) else repr(value)
 
 
-def _reopen(spec: FluidSpec, backend: str, options: dict[str, Any]) -> Fluid:
-    return Fluid(spec, backend=backend, **options)
+def _reopen(spec: FluidSpec, backend: str, options: dict[str, Any], floor: float) -> Fluid:
+    fluid = Fluid(spec, backend=backend, **options)
+    if floor:
+        object.__setattr__(fluid, "_floor", floor)
+        object.__setattr__(fluid, "_identity", (*fluid._identity, floor))
+    return fluid
