@@ -31,7 +31,7 @@ _FINE, _FINE_WEIGHTS = (0.5 * part for part in np.polynomial.legendre.leggauss(1
 _COARSE, _COARSE_WEIGHTS = (0.5 * part for part in np.polynomial.legendre.leggauss(8))
 _NODES = np.concatenate([[0.0, 1.0], 0.5 + _FINE, 0.5 + _COARSE])
 _IN_ORDER = np.sort(_NODES)
-_BISECTIONS = 50
+_BISECTIONS = 24
 _DEEPEST = 10
 _MOST_SEGMENTS = 60
 """On average for each line, all halvings together."""
