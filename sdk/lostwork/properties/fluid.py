@@ -58,6 +58,8 @@ _MOLAR_FORMS = {
     "u": (SPECIFIC_ENERGY, MOLAR_ENERGY),
     "s": (SPECIFIC_ENTROPY, MOLAR_ENTROPY),
 }
+_SAME_MOLAR_MASS = 1e-3
+"""Published atomic weights, and compositions of air, leave molar masses this far apart."""
 _SHIFTED = {"h": "h", "u": "h", "s": "s"}
 
 
@@ -291,8 +293,13 @@ class Fluid:
 
     @property
     def molar_mass(self) -> pint.Quantity[float]:
-        """Molar mass, kg/mol, as the backend uses it."""
-        return quantity(self._model.molar_mass, "kg/mol")
+        """Molar mass, kg/mol, by which amounts are taken for masses.
+
+        That of the components, so that amounts are conserved whatever equation of state each
+        stream has: the libraries' own differ in the fifth digit.  Where the caller stated another
+        (an option of the ideal gas), the stated one.
+        """
+        return quantity(self.molar_mass_si, "kg/mol")
 
     @property
     def limits(self) -> Limits:
@@ -319,7 +326,9 @@ class Fluid:
     @property
     def molar_mass_si(self) -> float:
         """Molar mass as a plain float, kg/mol."""
-        return self._model.molar_mass
+        of_components, of_model = self.spec.molar_mass, self._model.molar_mass
+        same = abs(of_model - of_components) <= _SAME_MOLAR_MASS * of_components
+        return of_components if same else of_model
 
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Fluid):
