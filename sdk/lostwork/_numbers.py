@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from typing import Any, Final
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,8 +15,6 @@ from lostwork.errors import NotFinite, QuantityError
 __all__ = ["Numbers", "is_number", "possible", "to_numbers"]
 
 Numbers = float | NDArray[np.float64]
-
-_CHUNK: Final = 65536
 
 
 def possible(si: float, dimension: Dimension) -> bool:
@@ -79,20 +77,14 @@ def _scaled(
     numbers: NDArray[Any], scale: float, offset: float, dimension: Dimension, field: str
 ) -> NDArray[np.float64]:
     si = np.empty(numbers.shape, dtype=np.float64)
-    flat = si.reshape(-1)
-    source = numbers.reshape(-1)
-    # Piece by piece, so that the check reads what the cache still holds.
-    sound = True
     with np.errstate(over="ignore", invalid="ignore"):
-        for start in range(0, flat.size, _CHUNK):
-            piece = flat[start : start + _CHUNK]
-            np.multiply(source[start : start + _CHUNK], scale, out=piece, casting="same_kind")
-            if offset:
-                piece += offset
-            # A sum of squares is finite only if every term is, and is the quickest sum there is.
-            sound = sound and math.isfinite(piece.dot(piece)) and _at_least(piece, dimension)
-    if not sound:
-        _find_fault(si, numbers, dimension, field)
+        np.multiply(numbers, scale, out=si, casting="same_kind")
+        if offset:
+            si += offset
+        # NaN and infinity show in the least or in the largest.
+        if not si.size or (math.isfinite(si.max()) and possible(float(si.min()), dimension)):
+            return si
+    _find_fault(si, numbers, dimension, field)
     return si
 
 
@@ -107,13 +99,7 @@ def _find_fault(
         with np.errstate(invalid="ignore"):
             sound = finite & ((si > low) if dimension.strict else (si >= low))
     faults = np.argwhere(~sound)
-    if not faults.size:  # only the squares were not finite
-        return
     first = tuple(int(i) for i in faults[0])
     where = f"{field}[{', '.join(map(str, first))}]"
     count = f"{len(faults)} of {si.size} values are refused" if len(faults) > 1 else ""
     raise impossible(float(si[first]), dimension, where, given[first], count)
-
-
-def _at_least(numbers: NDArray[np.float64], dimension: Dimension) -> bool:
-    return dimension.minimum is None or possible(float(numbers.min()), dimension)
