@@ -35,6 +35,7 @@ from lostwork_plugins.coolprop.bounds import Bounds, bounds_of, limits_of
 from lostwork_plugins.coolprop.critical_region import density_at
 from lostwork_plugins.coolprop.ideal import ideal_gas
 from lostwork_plugins.coolprop.inputs import INPUTS
+from lostwork_plugins.coolprop.pure_columns import LEAST_ROWS, WARM_PAIRS, pure_columns
 from lostwork_plugins.coolprop.rows import NaN, Row, columns_of
 from lostwork_plugins.coolprop.sources import source_of
 from lostwork_plugins.coolprop.threads import PerThread
@@ -87,7 +88,14 @@ class PureModel(PropertyModel):
         """State columns for two columns of `pair`."""
         if pair not in self.native_pairs:
             raise PairRefused(given=pair, reason=f"coolprop does not solve it for {self.fluid}")
-        return columns_of(partial(self._row, self._here(), pair), x, y)
+        here = self._here()
+        if pair in WARM_PAIRS and (isinstance(x, np.ndarray) or isinstance(y, np.ndarray)):
+            x, y = np.broadcast_arrays(x, y)
+            if x.size >= LEAST_ROWS:
+                state, dh, ds = here
+                cold = partial(self._row, here)
+                return pure_columns(state, (dh, ds), self._bounds, self._critical, cold, pair, x, y)
+        return columns_of(partial(self._row, here, pair), x, y)
 
     def ideal_gas_limit(self) -> tuple[float, float]:
         """Give h (J/kg) and s (J/kg/K) as an ideal gas at 298.15 K and 1 bar."""
@@ -139,9 +147,9 @@ class PureModel(PropertyModel):
         code, ordered = INPUTS[pair]
         try:
             state.update(code, *ordered(x, y))
+            row = self._read(here)
         except (ValueError, RuntimeError) as error:
             return self._second_try(here, pair, x, y, str(error))
-        row = self._read(here)
         if isinstance(row, str):
             return row
         # T and p that were given come back as given, not as iterated.

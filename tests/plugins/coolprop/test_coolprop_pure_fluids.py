@@ -184,6 +184,15 @@ def test_a_state_found_outside_the_range_is_refused_too(model_of):
     assert water.columns(("p", "h"), 1e5, cold.h - 5e4).failed
 
 
+def test_a_quality_below_the_triple_pressure_marks_its_row(model_of):
+    """The library accepts it, and raises only when the state is read."""
+    carbon_dioxide = model_of("CarbonDioxide")
+    columns = carbon_dioxide.columns(("p", "quality"), np.array([24944.8, 1e6]), np.zeros(2))
+    assert set(columns.failed) == {0}
+    assert math.isnan(columns.s[0])
+    assert columns.T[1] == pytest.approx(233.03, abs=0.01)  # Span and Wagner (1996)
+
+
 def test_bad_rows_are_marked_and_the_others_computed(model_of):
     nitrogen = model_of("Nitrogen")
     T = np.array([300.0, 30.0, math.nan, 400.0, 100.0])
