@@ -10,15 +10,16 @@ from functools import partial
 import numpy as np
 import pytest
 from CoolProp.CoolProp import (
+    PT_INPUTS,
     AbstractState,
     DmassT_INPUTS,
     iDmass,
     iP,
-    iphase_not_imposed,
+    iphase_gas,
+    iphase_supercritical_liquid,
     iT,
 )
 
-from lostwork_plugins.coolprop.neighbours import solve_neighbours, tour
 from lostwork_plugins.coolprop.pure import PureModel
 from lostwork_plugins.coolprop.pure_columns import _evaluated
 from lostwork_plugins.coolprop.rows import columns_of
@@ -190,74 +191,23 @@ def test_near_the_critical_point_a_column_misses_no_state_that_a_point_finds(mod
     assert back.p == pytest.approx(p[found], rel=1e-7)
 
 
-def test_a_neighbour_too_far_off_is_no_guide(model_of):
-    """Without the guard the cold rows below end up elsewhere, or are found by luck only."""
-    model = model_of("Nitrogen")
-    state, dh, ds = model._here()
-    T = np.linspace(280.0, 400.0, 400)
-    T[[57, 203, 301]] = 95.0, 112.0, 78.0
-    p = np.full(400, 60e5)
-    h = model.columns(("T", "p"), T, p).h
-
-    def cold(index):
-        return model._row((state, dh, ds), ("p", "h"), p[index], h[index])
-
-    equation = partial(_evaluated, state, (dh, ds), iphase_not_imposed)
-    table, _ = solve_neighbours(equation, cold, "h", p, h, 400)
-    assert np.isnan(table[[57, 203, 301], 0]).all()
-    others = np.isfinite(table[:, 0])
-    assert others.sum() >= 380
-    assert table[others, 0] == pytest.approx(T[others], rel=1e-9)
-    column = model.columns(("p", "h"), p, h)
-    assert pytest.approx(T, rel=3e-9) == column.T
-
-
-def test_a_metastable_root_is_no_answer(model_of):
-    """Vapour led on along its own branch into the dome, where the pressure still rises with rho."""
-    model = model_of("n-Propane")
-    state, dh, ds = model._here()
-    p = np.full(400, 8e5)
-    dew = model.columns(("p", "quality"), 8e5, 1.0)
-    h = np.linspace(dew.h + 6e4, dew.h - 1.5e4, 400)
-    wet = h < dew.h
-    equation = partial(_evaluated, state, (dh, ds), iphase_not_imposed)
-
-    def cold(index):
-        return model._row((state, dh, ds), ("p", "h"), p[index], h[index])
-
-    table, _ = solve_neighbours(equation, cold, "h", p, h, 400)
-    assert np.isnan(table[wet, 0]).all()
-    assert np.isfinite(table[~wet, 0]).mean() > 0.9
-    column = model.columns(("p", "h"), p, h)
-    assert (np.isnan(column.quality) == ~wet).all()
-    assert column.T[wet] == pytest.approx(dew.T, rel=1e-12)
-
-
-def test_states_without_neighbours_are_not_searched_among_neighbours():
-    rng = np.random.default_rng(1)
-    assert tour(10 ** rng.uniform(2, 8, 60), rng.uniform(0.0, 1.0, 60)) is None
-    order, span = tour(np.full(60, 1e5), rng.uniform(0.0, 1.0, 60))
-    assert sorted(order.tolist()) == list(range(60))
-    assert span == 60
-    given, _ = tour(np.linspace(1e5, 2e5, 60), np.linspace(0.0, 1.0, 60))
-    assert given.tolist() == list(range(60))
-
-
-def test_a_column_that_only_fails_is_given_up_soon():
-    tried = []
-
-    def nothing(T, rho):
-        tried.append(T.size)
-        return np.full((T.size, 6), math.nan)
-
-    def cold(index):
-        return 300.0, 1e5, 1.0, 3e5, 1e3, math.nan
-
-    p, y = np.full(500, 1e5), np.linspace(1e5, 2e5, 500)
-    table, given = solve_neighbours(nothing, cold, "h", p, y, 500)
-    assert np.isnan(table).all()
-    assert sum(tried) < 50
-    assert len(given) < 50
+@pytest.mark.parametrize(
+    ("fluid", "p", "T"), [("Nitrogen", 1e8, (72.0, 130.0)), ("R134a", 2e5, (430.0, 480.0))]
+)
+def test_a_column_that_runs_out_of_the_range_fails_from_there_on(model_of, fluid, p, T):
+    """Nitrogen that freezes, R134a hotter than its equation goes."""
+    model, raw = model_of(fluid), AbstractState("HEOS", fluid)
+    T = np.linspace(*T, COUNT)
+    h = np.empty(COUNT)
+    raw.specify_phase(iphase_supercritical_liquid if p > 1e7 else iphase_gas)
+    for i in range(COUNT):
+        raw.update(PT_INPUTS, p, T[i])
+        h[i] = raw.hmass()
+    column = model.columns(("p", "h"), np.full(COUNT, p), h)
+    single = _one_by_one(model, ("p", "h"), np.full(COUNT, p), h)
+    assert 50 < len(column.failed) < COUNT - 50
+    assert set(column.failed) == set(single.failed)
+    _assert_same(model, column, single)
 
 
 @pytest.mark.parametrize("fluid", ["Water", "CarbonDioxide"])
