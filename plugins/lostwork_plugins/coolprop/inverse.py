@@ -17,6 +17,7 @@ __all__ = ["root_from"]
 
 _FIRST_STEP = 0.03
 _GROWTH = 1.8
+_ROUNDING = 1e3
 
 
 def root_from(
@@ -45,6 +46,8 @@ def root_from(
     while True:
         b = min(a + step, high) if upwards else max(a - step, low)
         if b == a:
+            if abs(fa) <= _ROUNDING * f_tolerance:
+                return a  # the state is on the limit itself
             raise NoEquilibrium("no state within the limits of the equation has these values")
         fb = f(b)
         if (fb > 0.0) != (fa > 0.0) or fb == 0.0:

@@ -30,9 +30,9 @@ from lostwork import (
     StateNotFound,
 )
 from lostwork_plugins.coolprop.bounds import bounds_of, common_bounds, limits_of
+from lostwork_plugins.coolprop.mixture_columns import mixture_columns
 from lostwork_plugins.coolprop.mixture_states import MixtureStates
 from lostwork_plugins.coolprop.refusal import NoModel
-from lostwork_plugins.coolprop.rows import columns_of
 from lostwork_plugins.coolprop.sources import source_of
 from lostwork_plugins.coolprop.threads import PerThread
 
@@ -102,7 +102,7 @@ class MixtureModel(PropertyModel):
         """State columns for two columns of `pair`."""
         if pair not in self.native_pairs:
             raise PairRefused(given=pair, reason="coolprop does not solve it for a mixture")
-        return columns_of(partial(self._here().row, pair), x, y)
+        return mixture_columns(self._here(), self._bounds, pair, x, y)
 
     def ideal_gas_limit(self) -> tuple[float, float]:
         """Give h (J/kg) and s (J/kg/K) as an ideal gas at 298.15 K and 1 bar.

@@ -5,6 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 
+import numpy as np
+import numpy.typing as npt
 from CoolProp.CoolProp import (
     AbstractState,
 )
@@ -20,6 +22,7 @@ from lostwork_plugins.coolprop.equilibrium import (
 )
 from lostwork_plugins.coolprop.inverse import root_from
 from lostwork_plugins.coolprop.phase import Phase, PhaseEquation
+from lostwork_plugins.coolprop.phase_map import PhaseMap
 from lostwork_plugins.coolprop.rows import NaN, Row
 from lostwork_plugins.coolprop.saturation import saturated
 
@@ -56,8 +59,9 @@ class MixtureStates:
     ) -> None:
         self._z = z
         self._bounds = bounds
-        self._M = molar_mass
+        self.molar_mass = molar_mass
         self._equation = PhaseEquation(fluids, z)
+        self.phase_map = PhaseMap(self._equation, z, bounds)
         self._native = AbstractState("HEOS", "&".join(fluids))
         self._native.set_mole_fractions(list(z))
         self._ratios: Sequence[float] | None = None
@@ -84,6 +88,28 @@ class MixtureStates:
         T, p = found[:2]
         return self._bounds.reason_against_T(T) or self._bounds.reason_against_p(p) or found
 
+    def evaluated(
+        self, T: npt.NDArray[np.float64], rho: npt.NDArray[np.float64]
+    ) -> npt.NDArray[np.float64]:
+        """Evaluate the feed as one phase at T (K) and density (kg/m3), see `Equation`."""
+        equation, z, M = self._equation, self._z, self.molar_mass
+        rows = []
+        for T_row, rho_row in zip(T.tolist(), rho.tolist(), strict=True):
+            try:
+                rows.append(equation.state_and_slopes(T_row, rho_row / M, z))
+            except (ValueError, RuntimeError):
+                rows.append((NaN,) * 6)
+        # Per mole into per kilogram; (dp/dT)_rho has no amount in it.
+        return np.array(rows) / (1.0, M, M, M, 1.0, M)
+
+    def single_phase_density(self, T: float, p: float) -> float | None:
+        """Density (kg/m3) at T (K) and p (Pa), ``None`` where it is not surely one phase."""
+        try:
+            phases = equilibrium(self._equation, T, p, self._z)
+        except (NoEquilibrium, ValueError, RuntimeError, ArithmeticError):
+            return None
+        return phases.rho * self.molar_mass if isinstance(phases, Phase) else None
+
     def split(self, T: float, p: float) -> TwoPhases | str:
         """Phases at T and p, or the reason why there are not two."""
         reason = self._reason_against(("T", "p"), T, p)
@@ -105,7 +131,14 @@ class MixtureStates:
     def _numbers(self, T: float, p: float, phases: Equilibrium) -> Numbers:
         if isinstance(phases, Phase):
             h, s = self._equation.enthalpy_entropy(T, phases)
-            return T, p, 1 / (phases.rho * self._M), h / self._M, s / self._M, NaN
+            return (
+                T,
+                p,
+                1 / (phases.rho * self.molar_mass),
+                h / self.molar_mass,
+                s / self.molar_mass,
+                NaN,
+            )
         beta = phases.vapour_fraction
         v = h = s = 0.0
         for share, phase in ((1 - beta, phases.liquid), (beta, phases.vapour)):
@@ -115,7 +148,14 @@ class MixtureStates:
             v += share / phase.rho
             h += share * phase_h
             s += share * phase_s
-        return T, p, v / self._M, h / self._M, s / self._M, self._quality(phases)
+        return (
+            T,
+            p,
+            v / self.molar_mass,
+            h / self.molar_mass,
+            s / self.molar_mass,
+            self._quality(phases),
+        )
 
     def _quality(self, phases: TwoPhases) -> float:
         """Vapour fraction by mass."""
@@ -129,7 +169,11 @@ class MixtureStates:
         starts = (self._last_T, 1.2 * max(self._equation.critical_temperatures))
         reason = NoEquilibrium("no state was found")
         for start in starts:
-            for search in (self._single_at_pressure, self._any_at_pressure):
+            for search in (
+                self._single_at_pressure,
+                self._any_at_pressure,
+                self._past_gaps_at_pressure,
+            ):
                 try:
                     return search(p, name, target, start)
                 except NoEquilibrium as failure:
@@ -153,6 +197,22 @@ class MixtureStates:
         position = _POSITION[name]
         T = self._search_T(lambda T: self._at(T, p)[position] - target, name, start)
         return self._at(T, p)
+
+    def _past_gaps_at_pressure(self, p: float, name: str, target: float, start: float) -> Numbers:
+        """State found across temperatures at which the phases cannot be told.
+
+        There the search is led by the single phase; the state itself has to be told.
+        """
+        position = _POSITION[name]
+
+        def excess(T: float) -> float:
+            try:
+                return self._at(T, p)[position] - target
+            except NoEquilibrium:
+                phase = likeliest_phase(self._equation, T, p, self._z)
+                return self._numbers(T, p, phase)[position] - target
+
+        return self._at(self._search_T(excess, name, start), p)
 
     def _search_T(self, excess: Callable[[float], float], name: str, start: float) -> float:
         T = root_from(

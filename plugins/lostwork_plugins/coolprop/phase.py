@@ -139,6 +139,33 @@ class PhaseEquation:
         s -= self.R * math.log(phase.rho * self.R * T / REFERENCE_PRESSURE)
         return h, s
 
+    def state_and_slopes(
+        self, T: float, rho: float, x: Sequence[float]
+    ) -> tuple[float, float, float, float, float, float]:
+        """Give p (Pa), h (J/mol), s (J/mol/K), (dp/drho)_T, (dp/dT)_rho and c_v (J/mol/K).
+
+        At T (K) and density (mol/m3), whatever the phases there may be.  The slopes serve a search:
+        c_v has the ideal part of the mixture equation.
+
+        Raises
+        ------
+        ValueError, RuntimeError
+            CoolProp has no such state.
+        """
+        h, s = self.enthalpy_entropy(T, Phase(tuple(x), rho, ()))
+        state = self._state
+        if self._has_rest:
+            state.update(DmolarT_INPUTS, rho, T)
+        scale = self._scale
+        return (
+            scale * float(state.p()),
+            h,
+            s,
+            scale * float(state.first_partial_deriv(iP, iDmolar, iT)),
+            scale * float(state.first_partial_deriv(iP, iT, iDmolar)),
+            scale * float(state.cvmolar()),
+        )
+
     def _rest_of_vacuum(self, z: Sequence[float]) -> bool:
         state = self._state
         state.set_mole_fractions(list(z))
