@@ -198,9 +198,14 @@ class _Descent:
         return terms
 
     def exponent(self) -> int:
+        before = self.at
+        self.skip_space()
         raised = self.kind == "power"
         if raised:
             self.at += 1
+            self.skip_space()
+        else:
+            self.at = before
         if self.kind != "integer":
             if raised:
                 raise self.refuse()

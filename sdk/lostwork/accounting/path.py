@@ -186,6 +186,8 @@ class Path:
     def shortfall(self, quasi_static: Path) -> Shortfall:
         """What this path gives less than a quasi-static one from the same start.
 
+        Rows that one of the two could not follow are NaN.
+
         Raises
         ------
         PathError
@@ -193,12 +195,13 @@ class Path:
         """
         if quasi_static.kind != "quasi-static":
             raise PathError(reason="the shortfall is counted from a quasi-static path")
-        if not np.all(self.start.isclose(quasi_static.start, relative=_SAME_STATE)):
-            raise PathError(reason="the two paths start from different states")
         ends = (self.end, quasi_static.end)
-        if not np.allclose(ends[0].si.p, ends[1].si.p, rtol=_SAME_STATE, atol=0.0):
+        lost = np.isnan(ends[0].si.p) | np.isnan(ends[1].si.p)
+        if not np.all(self.start.isclose(quasi_static.start, relative=_SAME_STATE) | lost):
+            raise PathError(reason="the two paths start from different states")
+        if not np.all(np.isclose(ends[0].si.p, ends[1].si.p, rtol=_SAME_STATE, atol=0.0) | lost):
             raise PathError(reason="the two paths end at different pressures")
-        same = bool(np.all(ends[0].isclose(ends[1], relative=_SAME_STATE)))
+        same = bool(np.all(ends[0].isclose(ends[1], relative=_SAME_STATE) | lost))
         at_reservoir = (
             None
             if self._leg.reservoir is None

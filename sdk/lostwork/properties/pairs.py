@@ -19,7 +19,15 @@ import numpy as np
 import numpy.typing as npt
 
 from lostwork.errors import PairRefused
-from lostwork.properties.backend import DETERMINING_PAIRS, Column, Columns, Pair, PropertyModel
+from lostwork.properties.backend import (
+    DETERMINING_PAIRS,
+    REFERENCE_TEMPERATURE,
+    Column,
+    Columns,
+    Pair,
+    PropertyModel,
+    R,
+)
 from lostwork.properties.rootfinding import Rows, find_brackets, solve_brackets
 
 __all__ = ["ORDER", "ordered_pair", "solve_pair"]
@@ -42,6 +50,7 @@ _GIVE_TWO = "Give two of T, p, v (or rho), h, s, u, quality"
 
 # A sign change is a root only if the residual there is gone; at a jump it is not.
 _ROOT_FRACTION = 1e-8
+_ROUND_OFF = 1e-12
 _LEAST_PRESSURE = 1e-3
 
 
@@ -138,7 +147,8 @@ def _along_line(model: PropertyModel, pair: Pair, x: Vector, y: Vector, pure: bo
             return model.columns(("T", "p"), unknown, known)
         return model.columns(("T", "p"), known, np.exp(unknown))
 
-    _bracket_and_solve(states, sought, y[rows], low[rows], high[rows], rows, assembled)
+    small = _round_off(model, sought)
+    _bracket_and_solve(states, sought, y[rows], low[rows], high[rows], rows, assembled, small)
     return assembled.columns(pair, x, y)
 
 
@@ -198,7 +208,8 @@ def _across_pressures(
     low = np.full(x.size, np.log(max(model.limits.p_min, _LEAST_PRESSURE)))
     high = np.full(x.size, np.log(model.limits.p_max))
     assembled = _Assembly(x.size)
-    _bracket_and_solve(states, sought, target, low, high, np.arange(x.size), assembled)
+    small = _round_off(model, sought)
+    _bracket_and_solve(states, sought, target, low, high, np.arange(x.size), assembled, small)
     return assembled.columns(pair, x, y)
 
 
@@ -210,8 +221,12 @@ def _bracket_and_solve(
     high: Vector,
     rows: Rows,
     assembled: _Assembly,
+    small: float,
 ) -> None:
-    """Find the unknown of each row at which `sought` meets `target`, and put its state in place."""
+    """Find the unknown of each row at which `sought` meets `target`, and put its state in place.
+
+    `small` is what rounding leaves of a residual, however narrow the bracket.
+    """
     if rows.size == 0:
         return
 
@@ -229,8 +244,16 @@ def _bracket_and_solve(
     columns = states(root[alive], solved)
     left = np.abs(residual(root[alive], solved))
     scale = np.maximum(np.abs(bracket.f_low[alive]), np.abs(bracket.f_high[alive]))
-    true_root = left <= _ROOT_FRACTION * np.maximum(scale, 1e-6)
+    rounding = small + (0.0 if sought == "v" else _ROUND_OFF * np.abs(target[solved]))
+    true_root = left <= np.maximum(_ROOT_FRACTION * scale, rounding)
     assembled.put(rows[solved[true_root]], columns, true_root)
+
+
+def _round_off(model: PropertyModel, sought: str) -> float:
+    """Size of rounding in a residual: of ln v, of s against R, of h and u against R T."""
+    entropy = R / model.molar_mass
+    sizes = {"v": 1.0, "s": entropy, "h": entropy * REFERENCE_TEMPERATURE}
+    return _ROUND_OFF * sizes.get(sought, sizes["h"])
 
 
 class _Assembly:

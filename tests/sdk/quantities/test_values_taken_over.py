@@ -99,6 +99,8 @@ BTU = 1055.056
         ("1 kJ kg-1 K-1", SPECIFIC_ENTROPY, 1e3),
         ("1 kJ·kg⁻¹·K⁻¹", SPECIFIC_ENTROPY, 1e3),
         ("1 kJ*kg^-1*K**-1", SPECIFIC_ENTROPY, 1e3),
+        ("1 kilojoule / kilogram / kelvin ** 1", SPECIFIC_ENTROPY, 1e3),
+        ("1.2 kilogram / meter ** 3", DENSITY, 1.2),
         ("1 m2/s2", SPECIFIC_ENERGY, 1.0),
         ("1 m²/s²", SPECIFIC_ENERGY, 1.0),
         ("1 (m/s)^2", SPECIFIC_ENERGY, 1.0),
