@@ -171,15 +171,12 @@ class UnknownComponent(LostworkError, LookupError):
 
     name: str
     nearest: tuple[str, ...] = ()
+    instead: str = "Give a name, a CAS number or a formula"
 
     @property
     def message(self) -> str:
         near = f"nearest matches: {', '.join(self.nearest)}" if self.nearest else ""
-        return _sentence(
-            f"component {self.name!r} is not known",
-            near,
-            "Give a name, a CAS number or a formula",
-        )
+        return _sentence(f"component {self.name!r} is not known", near, self.instead)
 
 
 @dataclass(eq=False)

@@ -2,7 +2,9 @@
 
 Identities come from the `chemicals` library, which is loaded at the first look-up.  A formula that
 several well-known compounds share is refused rather than guessed, and so is the symbol of an
-element that comes as a molecule (N for N2).
+element that comes as a molecule (N for N2).  The library lists whatever anyone ever called a
+compound ("in" for talc, "flue gas" for carbon monoxide), so of its synonyms abbreviations and
+words for mixtures are not taken.
 """
 
 from __future__ import annotations
@@ -22,14 +24,17 @@ _LONGEST = 200
 _CAS = re.compile(r"\d{2,7}-\d{2}-\d")
 _FORMULA = re.compile(r"(?:[A-Z][a-z]?\d*)+")
 _REFRIGERANT = re.compile(r"r-?(\d{1,4}[a-z]{0,2}(?:\([ez]\))?)", re.IGNORECASE)
+_ABBREVIATION = re.compile(r".{1,3}|[a-z]{1,3}-?\d+")
+_MIXTURE = re.compile(r".*(gas|gases|air|oil|brine|fuel|naphtha|gasoline|kerosene|lpg|lng|ngl)")
+_GIVE_COMPOSITION = "It is no single compound; give a composition, by names and fractions"
 _MOLECULES = {
-    "H": ("hydrogen (H2)",),
-    "N": ("nitrogen (N2)",),
-    "O": ("oxygen (O2)", "ozone (O3)"),
-    "F": ("fluorine (F2)",),
-    "Cl": ("chlorine (Cl2)",),
-    "Br": ("bromine (Br2)",),
-    "I": ("iodine (I2)",),
+    "H": ("hydrogen",),
+    "N": ("nitrogen",),
+    "O": ("oxygen", "ozone"),
+    "F": ("fluorine",),
+    "Cl": ("chlorine",),
+    "Br": ("bromine",),
+    "I": ("iodine",),
 }
 
 
@@ -105,19 +110,16 @@ def _by_cas(text: str, cas: str) -> Any:
 
 
 def _by_name(text: str) -> Any:
-    from chemicals.identifiers import search_chemical  # noqa: PLC0415
-
+    """Look among the compounds of commerce; one that nobody meets is given by its CAS number."""
     plain = " ".join(text.lower().split())
     entry = _well_known().search_name(plain)
-    if entry:
+    if entry and plain in (str(entry.common_name).lower(), str(entry.iupac_name).lower()):
         return entry
-    # The library reads SMILES, InChI and numbers behind a prefix, none of which is a name.
-    if "=" in plain or plain.isdigit():
-        raise UnknownComponent(name=text)
-    try:
-        return search_chemical(plain)
-    except ValueError as error:
-        raise UnknownComponent(name=text, nearest=_nearest(plain)) from error
+    if _MIXTURE.fullmatch(plain):
+        raise UnknownComponent(name=text, instead=_GIVE_COMPOSITION)
+    if not entry or _ABBREVIATION.fullmatch(plain):
+        raise UnknownComponent(name=text, nearest=_nearest(plain))
+    return entry
 
 
 def _of_formula(text: str) -> list[Any]:
