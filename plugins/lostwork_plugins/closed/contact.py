@@ -26,12 +26,19 @@ from lostwork_plugins.closed.worth import charge_exergy_rise, from_heat
 
 __all__ = ["Equilibration", "ReservoirContact"]
 
+_ROUND_OFF = 1e-12
+
 
 class ReservoirContact(Process):
     """A charge heated or cooled by one reservoir, at constant pressure or volume.
 
-    It ends at `T_end`, or at the temperature of the reservoir.  `T_end` must lie between the
-    start and the reservoir, as heat does not flow uphill by itself; the verdict says so.
+    It ends at `T_end`, or at the temperature of the reservoir.  `T_end` lies between the start and
+    the reservoir: the entropy of the whole may rise beyond, but heat does not flow uphill alone.
+
+    Raises
+    ------
+    ProcessError
+        `T_end` is not between the start and the reservoir.
     """
 
     trade_name: ClassVar[str] = "reservoir-contact"
@@ -46,6 +53,7 @@ class ReservoirContact(Process):
         start = state_of(self.charge, self.label)
         mass = self.charge.mass_si
         T_end = self.si.reservoir if self.T_end is None else self.si.T_end
+        self._require_downhill(start.si.T, T_end)
         if self.held == "p":
             end = start.fluid.state_si(("T", "p"), T_end, start.si.p)
         else:
@@ -58,6 +66,16 @@ class ReservoirContact(Process):
             work=(Work.from_si(mass * work, per_time=False, name="boundary"),),
             remainder="heat transfer",
         )
+
+    def _require_downhill(self, T: Column, T_end: Column) -> None:
+        way, whole = np.asarray(T_end - T), np.asarray(self.si.reservoir - T)
+        uphill = (way * whole < 0.0) | (np.abs(way) > np.abs(whole) * (1.0 + _ROUND_OFF))
+        if np.any(uphill):
+            raise ProcessError(
+                process=self.label,
+                reason=f"T_end = {self.T_end} is not between the start, {T} K, and the reservoir, "
+                f"{self.reservoir}; heat does not flow uphill by itself",
+            )
 
     def purpose(self, balance: Balance) -> Purpose | None:
         """Exergy of the charge against that of the heat, where one gains what the other gives."""

@@ -54,7 +54,8 @@ def collect(
         after=_listed(name, "after", after, Content),
         per_time=_kind(name, (*inflows, *outflows, *heat, *work), bool(before or after)),
     )
-    common_shape(name, columns_of_balance(entries, site))
+    if 0 in common_shape(name, columns_of_balance(entries, site)):
+        raise IllPosed(balance=name, reason="its arrays are empty; give one row or more")
     return _solve_rate(name, entries)
 
 
