@@ -1,4 +1,4 @@
-"""Property backend on CoolProp: reference equations of pure fluids, pseudo-pure ones, mixtures."""
+"""Property backends on CoolProp: reference equations of pure fluids and mixtures; brines."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ __all__ = ["lostwork_backends"]
 
 @hookimpl
 def lostwork_backends() -> list[BackendDescriptor]:
-    """Offer the backend "coolprop"; CoolProp itself is imported at first use."""
+    """Offer "coolprop" and "incompressible"; CoolProp itself is imported at first use."""
     return [
         BackendDescriptor(
             name="coolprop",
@@ -18,5 +18,13 @@ def lostwork_backends() -> list[BackendDescriptor]:
             api_version=1,
             extra="coolprop",
             requires=("CoolProp",),
-        )
+        ),
+        BackendDescriptor(
+            name="incompressible",
+            summary="Brines, antifreeze and water as liquids of one density each T, by CoolProp",
+            target="lostwork_plugins.coolprop.incompressible:IncompressibleBackend",
+            api_version=1,
+            extra="coolprop",
+            requires=("CoolProp",),
+        ),
     ]

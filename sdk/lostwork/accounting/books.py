@@ -70,7 +70,7 @@ def keep_books(name: str, entries: Entries, T0: Column, closing: float) -> Books
         h and s of the states are counted from different zeros.
     """
     matter = entries.matter
-    check_datums(state for state, _ in matter)
+    check_datums(matter, closing)
     kept = conservation(matter, closing)
     zero = Zero(matter, kept)
     carried = _energy_carried(entries, zero)

@@ -7,7 +7,6 @@ are made or consumed.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,8 +16,9 @@ from lostwork.accounting.entries import Entry, summed
 from lostwork.errors import DatumMismatch
 from lostwork.properties.backend import Column
 from lostwork.properties.components import Component
+from lostwork.properties.datum import Datum
 from lostwork.properties.formation import formation
-from lostwork.properties.state import Matter, State
+from lostwork.properties.state import State
 
 __all__ = ["Conservation", "check_datums", "conservation"]
 
@@ -38,21 +38,31 @@ class Conservation:
     """The component or element with the largest residual."""
 
 
-def check_datums(matter: Iterable[Matter]) -> None:
+def check_datums(entries: list[Entry], closing: float) -> None:
     """Refuse to subtract across datums.
+
+    What is counted from a zero of its own may pass through beside the others, as a brine does on
+    one side of an evaporator: as much leaves as enters, and the zero cancels.
 
     Raises
     ------
     DatumMismatch
-        Two of the states count h and s from different zeros.
+        Two of the states count h and s from different zeros, and one turns into the other.
     """
-    first: Matter | None = None
-    for state in matter:
-        if first is None:
-            first = state
-        elif state.datum != first.datum:
+    by_datum: dict[Datum, list[Entry]] = {}
+    for state, mass in entries:
+        by_datum.setdefault(state.datum, []).append((state, mass))
+    if len(by_datum) < 2:
+        return
+    for group in by_datum.values():
+        masses = [mass for _, mass in group]
+        if anywhere(size(summed(masses)) > closing * _gross(masses)):
+            first = group[0][0]
+            second = next(state for state, _ in entries if state.datum != first.datum)
             raise DatumMismatch(
-                first=first.label, second=state.label, reason=f"{first.datum} against {state.datum}"
+                first=first.label,
+                second=second.label,
+                reason=f"{first.datum} against {second.datum}",
             )
 
 

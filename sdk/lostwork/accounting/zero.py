@@ -1,6 +1,7 @@
 """Where h and s are counted from within one balance, so that no result hangs on the datum.
 
-Mass that does not quite close would otherwise be multiplied by enthalpies of formation.
+Mass that does not quite close would otherwise be multiplied by enthalpies of formation.  A state on
+a datum of its own keeps it: what passes through unchanged takes its zero along.
 """
 
 from __future__ import annotations
@@ -54,7 +55,7 @@ class Zero:
 
 
 def _of_components(state: Matter) -> tuple[float, float]:
-    if not isinstance(state, State):
+    if not isinstance(state, State) or not state.datum.is_common:
         return 0.0, 0.0
     spec = state.fluid.spec
     h = s = 0.0

@@ -161,6 +161,8 @@ class PropertyModel(ABC):
     """Whether the model knows vapour-liquid equilibrium."""
     entropy_noise: float
     """Measured inconsistency of the model in single phase, J/kg/K: the floor of a verdict."""
+    only_phase: str = "gas"
+    """What the states of a model are that knows no two phases and no critical point."""
     notes: tuple[str, ...] = ()
     """What the user should know, for example which interaction parameters were missing."""
 

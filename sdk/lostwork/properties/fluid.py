@@ -292,6 +292,11 @@ class Fluid:
         return self._model.two_phase
 
     @property
+    def only_phase(self) -> str:
+        """Phase of the states of a backend that models one phase."""
+        return self._model.only_phase
+
+    @property
     def molar_mass(self) -> pint.Quantity[float]:
         """Molar mass, kg/mol, by which amounts are taken for masses.
 

@@ -46,6 +46,7 @@ _REFUSED: dict[Pair, tuple[str, str]] = {
     ("u", "quality"): ("quality along u has several roots", "Give p or T with quality"),
 }
 
+_MISSING = {"gas": "liquid"}
 _GIVE_TWO = "Give two of T, p, v (or rho), h, s, u, quality"
 
 # A sign change is a root only if the residual there is gone; at a jump it is not.
@@ -102,7 +103,9 @@ def solve_pair(model: PropertyModel, pair: Pair, x: Column, y: Column, *, pure: 
         return model.columns(pair, x, y)
     if "quality" in pair:
         raise PairRefused(
-            given=pair, reason="this fluid is modelled without a liquid", instead="Give T with p"
+            given=pair,
+            reason=f"this fluid is modelled without a {_MISSING.get(model.only_phase, 'vapour')}",
+            instead="Give T with p",
         )
     if isinstance(x, np.ndarray):
         return _solve_columns(model, pair, x, np.asarray(y, dtype=np.float64), pure)

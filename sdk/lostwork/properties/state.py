@@ -439,4 +439,4 @@ def _phase_names(si: SiState, fluid: Fluid) -> npt.NDArray[np.str_]:
                 (critical.T > T) & (v < critical.v),
             ]
             names += ["supercritical", "liquid"]
-    return np.select(conditions, names, default="gas")
+    return np.select(conditions, names, default=fluid.only_phase if critical is None else "gas")
