@@ -428,7 +428,9 @@ RECIPES: dict[str, Recipe] = {
 
 def applicable(kind: str, material: Material) -> bool:
     """Whether a process type can be run with a material at all."""
-    return material.two_phases or kind not in ("pumping", "flash-separation")
+    if kind == "flash-separation":
+        return material.two_phases and not material.pseudo_pure  # which gives no compositions
+    return material.two_phases or kind != "pumping"
 
 
 @st.composite

@@ -68,21 +68,33 @@ class Mixing(FlowStep):
         outlet = refusals.state(
             self._mixed_fluid(shared), ("p", "h"), p_out, sum(x * feed.h for x, feed in shared)
         )
-        fallen = [(feed, let_down(refusals, feed, p_out)) for feed in feeds]
         mechanical = sum(x * feed.mechanical for x, feed in shared)
-        generated = total * outlet.si.s - sum(feed.mass * low.si.s for feed, low in fallen)
         return lw.Solution(
             outlets={
                 "outlet": self.stream(
                     "outlet", outlet, feeds[0], mass=total, mechanical=point_or_array(mechanical)
                 )
             },
-            mechanisms={
-                "pressure drop": sum(entropy_of_drop(feed, low) for feed, low in fallen),
-                "mixing": generated,
-            },
-            remainder="mixing",
+            **self._split(refusals, feeds, outlet, p_out),
         )
+
+    @staticmethod
+    def _split(
+        refusals: Refusals, feeds: list[Inflow], outlet: lw.State, p_out: lw.Column
+    ) -> dict[str, Any]:
+        """Give mechanisms and remainder; a stream let down out of its model leaves no split."""
+        try:
+            fallen = [(feed, let_down(refusals, feed, p_out)) for feed in feeds]
+        except lw.PropertyError:
+            return {}
+        drop = sum(entropy_of_drop(feed, low) for feed, low in fallen)
+        total = sum(feed.mass for feed in feeds)
+        mixing = total * outlet.si.s - sum(feed.mass * low.si.s for feed, low in fallen)
+        lost = np.isnan(drop) & np.isfinite(outlet.si.s)
+        if not np.any(lost):
+            return {"mechanisms": {"pressure drop": drop, "mixing": mixing}, "remainder": "mixing"}
+        known = {"pressure drop": np.where(lost, 0.0, drop), "mixing": np.where(lost, 0.0, mixing)}
+        return {"mechanisms": known}
 
     def purpose(self, balance: lw.Balance) -> lw.Purpose | None:
         """Exergy given up by the streams that lose, for those that gain, if any does.

@@ -201,3 +201,16 @@ def test_a_measured_step_may_leave_one_rate_and_one_work_open(site) -> None:
     h -= PropsSI("Hmass", "T", 423.15, "P", 2e5, "Water")
     assert balance.work[0].si == pytest.approx(-8.0 * h, rel=1e-9)
     assert step.outlet.name == "turbine.exhaust"
+
+
+def test_a_stream_that_could_not_be_let_down_alone_is_mixed_all_the_same():
+    """Carbon dioxide of 6.6 bar and 230 K would freeze at 1 bar; mixed with more it does not."""
+    fluid = lw.Fluid("carbon dioxide", backend="coolprop")
+    thin, dense = (
+        lw.Stream(fluid.state(T="230 K", p=p), rate="0.1 kg/s") for p in ("1 bar", "6.60693 bar")
+    )
+    books = lw.process("mixing", inflows=(thin, dense)).balance(
+        lw.Surroundings(T="15 degC", p="1 bar")
+    )
+    assert books.verdict.status is lw.Status.possible
+    assert list(books.losses) == ["not attributed"]
