@@ -104,7 +104,9 @@ def _heat(q: Column, change: Column, T: Column, boundary: Column | None) -> tupl
     if boundary is not None:
         return (Heat.from_si(q, boundary, per_time=False, name="reservoir"),)
     with np.errstate(invalid="ignore", divide="ignore"):
-        mean = np.where(np.asarray(change) != 0.0, np.asarray(q) / change, T)
+        # Where no heat flows its temperature is nobody's; q / change would be 0 K or nothing.
+        flows = (np.asarray(change) != 0.0) & (np.asarray(q) != 0.0)
+        mean = np.where(flows, np.asarray(q) / change, T)
     return (
         Heat.from_si(
             q, mean if mean.shape else float(mean), per_time=False, name="bodies that keep pace"

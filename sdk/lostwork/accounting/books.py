@@ -101,9 +101,7 @@ def keep_books(name: str, entries: Entries, T0: Column, closing: float) -> Books
 
 def _entropy_generated(entries: Entries, zero: Zero) -> Column:
     with_matter = summed(mass * zero.s(state) for state, mass in entries.matter)
-    # A row that failed has a heat of NaN at a temperature of NaN, and numpy warns of some of them.
-    with np.errstate(invalid="ignore"):
-        return -with_matter - summed(known(q.si) / q.T for q in entries.heat)
+    return -with_matter - summed(known(q.si) / q.T for q in entries.heat)
 
 
 def _energy_carried(entries: Entries, zero: Zero) -> Column:

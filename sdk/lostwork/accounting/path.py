@@ -245,7 +245,8 @@ class Path:
     def _mean_temperature(self) -> Column:
         change = np.asarray(self.end.si.s - self.start.si.s)
         with np.errstate(invalid="ignore", divide="ignore"):
-            mean = np.where(change != 0.0, self._leg.heat / change, self.start.si.T)
+            flows = (change != 0.0) & (np.asarray(self._leg.heat) != 0.0)
+            mean = np.where(flows, self._leg.heat / change, self.start.si.T)
         return mean if mean.shape else float(mean)
 
     def _steps(self, values: Any) -> Any:

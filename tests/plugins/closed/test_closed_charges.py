@@ -76,6 +76,15 @@ def test_a_slow_path_with_bodies_that_keep_pace_loses_nothing(backend, held):
     assert books.work_lost.magnitude == pytest.approx(0.0, abs=1e-3)
 
 
+def test_rows_in_which_nothing_happens_stand_beside_one_that_fails():
+    fluid = lw.Fluid("carbon dioxide", backend="coolprop")
+    still = lw.Content(fluid.state(T="230 K", p="1 bar"), mass="0.1 kg")
+    p_end = ["1 bar", "1 bar", "0.769 bar"]  # the last one would freeze
+    books = lw.process("quasi-static-path", charge=still, held="s", p_end=p_end).balance(SITE)
+    assert books.verdict.statuses.tolist() == ["reversible", "reversible", "undecided"]
+    assert set(books.books.failed) == {2}
+
+
 def test_one_step_is_the_sudden_expansion():
     sudden = lw.process("sudden-expansion", charge=nitrogen(), p_outer="6 bar").balance(SITE)
     stepwise = lw.process("stepwise-expansion", charge=nitrogen(), p_end="6 bar", steps=1).balance(

@@ -22,7 +22,7 @@ def _part(cas: str, name: str) -> Component:
 
 
 def test_the_plugin_describes_its_backend_without_importing_the_library():
-    (descriptor,) = lostwork_backends()
+    descriptor, _ = lostwork_backends()
     assert descriptor.name == "coolprop"
     assert descriptor.target == "lostwork_plugins.coolprop.backend:CoolPropBackend"
     assert descriptor.requires == ("CoolProp",)
