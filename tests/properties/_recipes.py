@@ -90,7 +90,9 @@ class Hand:
         ceiling = 0.6 * critical.p if critical is not None else 2e6
         p = self.pressure(low=self.material.lowest_boiling, high=ceiling)
         boiling = _existing(fluid, ("p", "quality"), p, 0.0 * np.asarray(p))
-        cooler = np.maximum(boiling.si.T - 1.0 - self.rises(15.0), fluid.limits.T_min + 3.0)
+        coldest = max(fluid.limits.T_min + 3.0, self.material.T[0] - 10.0)
+        cooler = np.maximum(boiling.si.T - 1.0 - self.rises(15.0), coldest)
+        assume(bool(np.all(cooler <= boiling.si.T - 1.0)))
         return _existing(fluid, ("T", "p"), cooler, p)
 
     def stream(self, state: lw.State | None = None, **mechanical: Any) -> lw.Stream:

@@ -82,12 +82,13 @@ def _assert_found_again(state: lw.State, found: SiState, what: str, *, accuracy:
 
 
 def _unseen_pressure(state: lw.State) -> float:
-    """Change of pressure at constant s that moves u by no more than its last digits."""
+    """Change of pressure at constant s that moves u by no more than its noise."""
     si = state.si
     pressed = state.fluid.state_si(("p", "s"), 1.1 * si.p, si.s).si
     answer = abs(pressed.u - si.u) / (0.1 * si.p)
     digits = 64.0 * np.finfo(float).eps * (abs(si.u) + si.T * abs(si.s))
-    return float(digits / answer)
+    noise = si.T * float(state.fluid.noise_at(si.T, si.p))
+    return float((digits + noise) / answer)
 
 
 @every_material()
