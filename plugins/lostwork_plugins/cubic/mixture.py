@@ -20,6 +20,7 @@ from lostwork import (
     R,
     StateNotFound,
 )
+from lostwork_plugins.cubic.borders import Borders
 from lostwork_plugins.cubic.bracketed import solve_by_values, solve_rising
 from lostwork_plugins.cubic.coexistence import Given, Unknowns, both_phases, solve
 from lostwork_plugins.cubic.flash import at_quality, at_temperature_and_pressure
@@ -70,6 +71,7 @@ class MixtureModel(PropertyModel):
         self._z = np.array(recipe[0].mole_fractions)
         self._z = self._z / self._z.sum()
         self.molar_mass = float(self._z @ substance.molar_mass)
+        self._borders = Borders(substance, numbers, self._z)
 
     def __reduce__(self) -> tuple[Any, ...]:
         from lostwork_plugins.cubic.backend import reopen  # noqa: PLC0415
@@ -155,7 +157,7 @@ class MixtureModel(PropertyModel):
         left = np.flatnonzero(table.open[rows])
         if left.size == 0:
             return
-        bubble, dew, known = self._borders(p[left])
+        bubble, dew, known = self._borders.at(p[left])
         at_bubble, at_dew = self._molar_of(name, bubble), self._molar_of(name, dew)
         molar = y[left] * self.molar_mass
         with np.errstate(invalid="ignore"):
@@ -212,21 +214,6 @@ class MixtureModel(PropertyModel):
 
     def _split(self, T: Vector, p: Vector, test: Stability) -> tuple[Unknowns, Mask]:
         return at_temperature_and_pressure(self._substance, T, p, self._feed(T.size), test)
-
-    def _borders(self, p: Vector) -> tuple[Unknowns, Unknowns, Mask]:
-        """Bubble and dew point at each pressure, and where both are known."""
-        # Calls come with many rows at few pressures: each border is found once.
-        levels, back = np.unique(p, return_inverse=True)
-        feed = self._feed(levels.size)
-        zero, one = np.zeros(levels.size), np.ones(levels.size)
-        bubble, has_bubble = at_quality(
-            self._substance, self._numbers, "p", levels, zero, feed, march=False
-        )
-        dew, has_dew = at_quality(
-            self._substance, self._numbers, "p", levels, one, feed, march=False
-        )
-        both = has_bubble & has_dew & (dew.T >= bubble.T)
-        return bubble.rows(back), dew.rows(back), both[back]
 
     def _molar_of(self, name: str, at: Unknowns) -> Vector:
         with np.errstate(all="ignore"):

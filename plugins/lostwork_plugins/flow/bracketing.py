@@ -19,6 +19,7 @@ def bracketed_root(
     high: _Array,
     *,
     relative: float = 1e-12,
+    enough: float = 0.0,
 ) -> _Array:
     """Find where `residual` crosses zero between `low` and `high`.
 
@@ -33,6 +34,8 @@ def bracketed_root(
         Ends of the brackets, of one shape.
     relative
         Width of the bracket, against its first width, at which a row is done.
+    enough
+        Size of the residual at which a row is done, and stays where it is.
 
     Returns
     -------
@@ -49,14 +52,14 @@ def bracketed_root(
             secant = b - f_b * (b - a) / (f_b - f_a)
             inside = (secant > np.minimum(a, b)) & (secant < np.maximum(a, b))
         middle = np.where(inside & (step % 3 != 2), secant, 0.5 * (a + b))
-        middle = np.where(f_b == 0.0, b, middle)
+        middle = np.where(np.abs(f_b) <= enough, b, middle)
         f_middle = residual(middle)
         with np.errstate(invalid="ignore"):
             crossed = f_middle * f_b < 0.0
         a, f_a = np.where(crossed, b, a), np.where(crossed, f_b, 0.5 * f_a)
         b, f_b = middle, f_middle
         with np.errstate(invalid="ignore"):
-            done = (np.abs(b - a) <= relative * width) | (f_b == 0.0) | ~bracketed
+            done = (np.abs(b - a) <= relative * width) | (np.abs(f_b) <= enough) | ~bracketed
         if np.all(done | ~np.isfinite(f_b)):
             break
     return np.where(bracketed, b, np.nan)

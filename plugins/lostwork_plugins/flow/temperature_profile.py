@@ -24,10 +24,11 @@ __all__ = ["Side", "duty_at_approach", "least_difference"]
 _Array = npt.NDArray[np.float64]
 
 _POINTS = 25
-_REFINED_POINTS = 7
-_MOST_REFINEMENTS = 14
+_REFINED_POINTS = 13
+_MOST_REFINEMENTS = 12
 _LEVEL = 1e-7
 _DUTY_ACCURACY = 1e-10
+_APPROACH_ACCURACY = 1e-9
 
 
 @dataclass(frozen=True)
@@ -143,4 +144,5 @@ def duty_at_approach(
 
     low = np.zeros(shape)
     high = np.broadcast_to(np.asarray(largest, dtype=np.float64), shape)
-    return point_or_array(bracketed_root(residual, low, high, relative=_DUTY_ACCURACY))
+    root = bracketed_root(residual, low, high, relative=_DUTY_ACCURACY, enough=_APPROACH_ACCURACY)
+    return point_or_array(root)

@@ -193,3 +193,22 @@ def test_threads_that_share_a_model_do_not_disturb_each_other(model_of, fluid):
     with ThreadPoolExecutor(6) as pool:
         together = list(pool.map(lambda row: model.columns(("p", "h"), *row).s, rows))
     assert together == alone
+
+
+def test_borders_of_a_dome_are_found_once_for_calls_at_the_same_pressure(model_of, monkeypatch):
+    from lostwork_plugins.cubic import borders
+
+    found = []
+    at_quality = borders.at_quality
+
+    def counted(*given, **options):
+        found.append(given)
+        return at_quality(*given, **options)
+
+    monkeypatch.setattr(borders, "at_quality", counted)
+    model, p = model_of(GAS), np.full(3, 2e6)
+    wet = model.columns(("p", "quality"), p, np.array([0.4, 0.5, 0.8]))
+    searched = [model.columns(("p", "h"), p, wet.h) for _ in range(5)]
+    assert len(found) == 2, "one bubble point and one dew point"
+    assert all(np.array_equal(columns.T, searched[0].T) for columns in searched)
+    np.testing.assert_allclose(searched[0].T, wet.T, rtol=1e-9)

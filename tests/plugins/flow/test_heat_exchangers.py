@@ -147,3 +147,18 @@ def test_a_sweep_of_effectiveness_gives_row_by_row_what_single_steps_give(
     for share, row in zip(shares, lost, strict=True):
         single = lw.process("heat-exchange", hot=hot_air, cold=cold_air, effectiveness=share)
         assert single.balance(site).work_lost_si == pytest.approx(row, rel=1e-10)
+
+
+def test_exchangers_of_unlike_pinches_all_reach_the_approach_they_state() -> None:
+    water = lw.Fluid("water", backend="coolprop")
+    hot = water.state(T=["560 K", "560 K", "450 K", "520 K"], p="20 bar")
+    cold = water.state(
+        T=["300 K", "360 K", "290 K", "400 K"], p=["10 bar", "40 bar", "5 bar", "1 bar"]
+    )
+    step = lw.process(
+        "heat-exchange",
+        hot=lw.Stream(hot, rate="1 kg/s"),
+        cold=lw.Stream(cold, rate="1.3 kg/s"),
+        minimum_approach=["7 K", "3 K", "20 K", "0.5 K"],
+    )
+    assert step.approach_reached.magnitude == pytest.approx([7.0, 3.0, 20.0, 0.5], abs=1e-6)
