@@ -28,6 +28,8 @@ class Material:
     p: tuple[float, float]
     cost: float = 1.0
     options: Mapping[str, Any] = field(default_factory=dict)
+    coldest_liquid: float = 0.0
+    """K; above the density maximum of water, where s hardly tells the pressure."""
 
     @property
     def fluid(self) -> lw.Fluid:
@@ -80,7 +82,15 @@ MATERIALS = (
         (1e3, 1e7),
         options={"cp": "1005 J/kg/K"},
     ),
-    Material("water by HEOS", "water", "coolprop", (290.0, 1100.0), (2e3, 2e7), 1.5),
+    Material(
+        "water by HEOS",
+        "water",
+        "coolprop",
+        (290.0, 1100.0),
+        (2e3, 2e7),
+        1.5,
+        coldest_liquid=282.0,
+    ),
     Material("propane by HEOS", "propane", "coolprop", (200.0, 600.0), (2e4, 1e7), 1.5),
     Material(
         "carbon dioxide by HEOS", "carbon dioxide", "coolprop", (230.0, 900.0), (1e5, 2e7), 1.5

@@ -90,7 +90,7 @@ class Hand:
         ceiling = 0.6 * critical.p if critical is not None else 2e6
         p = self.pressure(low=self.material.lowest_boiling, high=ceiling)
         boiling = _existing(fluid, ("p", "quality"), p, 0.0 * np.asarray(p))
-        coldest = max(fluid.limits.T_min + 3.0, self.material.T[0] - 10.0)
+        coldest = max(fluid.limits.T_min + 3.0, self.material.coldest_liquid)
         cooler = np.maximum(boiling.si.T - 1.0 - self.rises(15.0), coldest)
         assume(bool(np.all(cooler <= boiling.si.T - 1.0)))
         return _existing(fluid, ("T", "p"), cooler, p)
