@@ -1,10 +1,11 @@
 """A pure fluid on its reference equation of state.
 
-CoolProp solves every determining pair of a pure fluid without a wrong answer as long as it is asked
-inside the range of the equation; the rows it may not answer are refused here:
+CoolProp solves every determining pair of a pure fluid but one without a wrong answer, as long as it
+is asked inside the range of the equation; the rows it may not answer are refused here:
 
 - outside the range, or solid;
 - T and p on the saturation line, where they do not fix a state;
+- p and v beside it, which CoolProp takes to be on it: these are solved here;
 - what CoolProp itself cannot solve.  Near the critical point T and p are tried again by density.
 """
 
@@ -19,6 +20,7 @@ import numpy as np
 from CoolProp.CoolProp import (
     QT_INPUTS,
     AbstractState,
+    iphase_twophase,
 )
 
 from lostwork import (
@@ -31,8 +33,10 @@ from lostwork import (
     PairRefused,
     PropertyModel,
 )
+from lostwork_plugins.coolprop.beside_saturation import find_beside_line
 from lostwork_plugins.coolprop.bounds import Bounds, bounds_of, limits_of
 from lostwork_plugins.coolprop.critical_region import density_at
+from lostwork_plugins.coolprop.density_maximum import reason_if_two_states
 from lostwork_plugins.coolprop.ideal import ideal_gas
 from lostwork_plugins.coolprop.inputs import INPUTS
 from lostwork_plugins.coolprop.pure_columns import LEAST_ROWS, WARM_PAIRS, pure_columns
@@ -44,6 +48,7 @@ __all__ = ["PureModel"]
 
 _ON_SATURATION = 1e-6
 _LEAST_PRESSURE = 1.0
+_BY_VOLUME = ("p", "v")
 _SHIFTED_INPUTS = {"h": 0, "u": 0, "s": 1}
 
 _NOISE = 5e-6
@@ -147,7 +152,10 @@ class PureModel(PropertyModel):
         code, ordered = INPUTS[pair]
         try:
             state.update(code, *ordered(x, y))
-            row = self._read(here)
+            row = self._beside_line(here, x, y) if pair == _BY_VOLUME else self._read(here)
+            twins = reason_if_two_states(state, self.fluid, pair, y, self._bounds.T_min)
+            if twins is not None:
+                return twins
         except (ValueError, RuntimeError) as error:
             return self._second_try(here, pair, x, y, str(error))
         if isinstance(row, str):
@@ -156,6 +164,18 @@ class PureModel(PropertyModel):
         if pair[0] == "T":
             return (x, y, *row[2:]) if pair[1] == "p" else (x, *row[1:])
         return (row[0], x, *row[2:]) if pair[0] == "p" else row
+
+    def _beside_line(self, here: tuple[Any, float, float], p: float, v: float) -> Row:
+        """Read what CoolProp found for p and v, unless it lies off the line that it was put on."""
+        state = here[0]
+        quality = state.Q()
+        if state.phase() != iphase_twophase or 0.0 <= quality <= 1.0:
+            return self._read(here)
+        try:
+            find_beside_line(state, p, v, round(quality), self._bounds)
+            return self._read(here)
+        finally:
+            state.unspecify_phase()
 
     def _read(self, here: tuple[Any, float, float]) -> Row:
         state, dh, ds = here

@@ -21,7 +21,6 @@ import numpy.typing as npt
 from lostwork.errors import PairRefused
 from lostwork.properties.backend import (
     DETERMINING_PAIRS,
-    REFERENCE_TEMPERATURE,
     Column,
     Columns,
     Pair,
@@ -150,8 +149,7 @@ def _along_line(model: PropertyModel, pair: Pair, x: Vector, y: Vector, pure: bo
             return model.columns(("T", "p"), unknown, known)
         return model.columns(("T", "p"), known, np.exp(unknown))
 
-    small = _round_off(model, sought)
-    _bracket_and_solve(states, sought, y[rows], low[rows], high[rows], rows, assembled, small)
+    _bracket_and_solve(model, states, sought, y[rows], low[rows], high[rows], rows, assembled)
     return assembled.columns(pair, x, y)
 
 
@@ -211,12 +209,12 @@ def _across_pressures(
     low = np.full(x.size, np.log(max(model.limits.p_min, _LEAST_PRESSURE)))
     high = np.full(x.size, np.log(model.limits.p_max))
     assembled = _Assembly(x.size)
-    small = _round_off(model, sought)
-    _bracket_and_solve(states, sought, target, low, high, np.arange(x.size), assembled, small)
+    _bracket_and_solve(model, states, sought, target, low, high, np.arange(x.size), assembled)
     return assembled.columns(pair, x, y)
 
 
 def _bracket_and_solve(
+    model: PropertyModel,
     states: Callable[[Vector, Rows], Columns],
     sought: str,
     target: Vector,
@@ -224,12 +222,8 @@ def _bracket_and_solve(
     high: Vector,
     rows: Rows,
     assembled: _Assembly,
-    small: float,
 ) -> None:
-    """Find the unknown of each row at which `sought` meets `target`, and put its state in place.
-
-    `small` is what rounding leaves of a residual, however narrow the bracket.
-    """
+    """Find the unknown of each row at which `sought` meets `target`, and put its state in place."""
     if rows.size == 0:
         return
 
@@ -247,16 +241,18 @@ def _bracket_and_solve(
     columns = states(root[alive], solved)
     left = np.abs(residual(root[alive], solved))
     scale = np.maximum(np.abs(bracket.f_low[alive]), np.abs(bracket.f_high[alive]))
-    rounding = small + (0.0 if sought == "v" else _ROUND_OFF * np.abs(target[solved]))
-    true_root = left <= np.maximum(_ROOT_FRACTION * scale, rounding)
+    unseen = _unseen(model, sought, np.asarray(columns.T), target[solved])
+    true_root = left <= np.maximum(_ROOT_FRACTION * scale, unseen)
     assembled.put(rows[solved[true_root]], columns, true_root)
 
 
-def _round_off(model: PropertyModel, sought: str) -> float:
-    """Size of rounding in a residual: of ln v, of s against R, of h and u against R T."""
-    entropy = R / model.molar_mass
-    sizes = {"v": 1.0, "s": entropy, "h": entropy * REFERENCE_TEMPERATURE}
-    return _ROUND_OFF * sizes.get(sought, sizes["h"])
+def _unseen(model: PropertyModel, sought: str, T: Vector, target: Vector) -> Vector:
+    """What is left of a residual however narrow the bracket: by rounding and the model's noise."""
+    if sought == "v":
+        return np.full(T.size, _ROUND_OFF)
+    entropy = _ROUND_OFF * R / model.molar_mass + model.entropy_noise
+    rounding = _ROUND_OFF * np.abs(target)
+    return rounding + (entropy if sought == "s" else entropy * T)
 
 
 class _Assembly:
